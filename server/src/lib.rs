@@ -1,0 +1,1 @@
+//! Meterwright's service: everything that touches the world. The balance itself lives in `meterwright-engine`.

@@ -1,0 +1,3 @@
+//! The `meterwright` program.
+
+fn main() {}

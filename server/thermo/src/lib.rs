@@ -1,0 +1,7 @@
+//! Properties of the fluids of a power plant: pure functions with exact derivatives, no allocation, no I/O.
+//!
+//! SI units throughout: Pa, K, J/kg, J/(kg K), m3/kg.
+
+pub mod scalar;
+
+pub use scalar::{Dual, Scalar};

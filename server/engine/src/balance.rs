@@ -1,0 +1,168 @@
+//! The one door's result: one balance, as plain data.
+//!
+//! Everything is in SI; a tag's values are in the SI of its own unit (pascals above the surroundings for a gauge tag).
+//! Names, units and order live beside the compiled plant and are the same for every balance of it.
+
+/// One tag's reading over one period, in the tag's unit, as logged.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Reading {
+    /// Mean over the period, or the single sample.
+    pub mean: f64,
+    /// Standard error of the mean; absent where there is a single sample.
+    pub standard_error: Option<f64>,
+    /// Number of samples behind the mean.
+    pub samples: u32,
+}
+
+impl Reading {
+    /// A single sample.
+    pub fn single(value: f64) -> Self {
+        Self { mean: value, standard_error: None, samples: 1 }
+    }
+}
+
+/// Whether other meters check a tag or a given.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum TagClass {
+    /// The balances would give a value without it.
+    Redundant,
+    /// Nothing else speaks of its quantity.
+    Nonredundant,
+}
+
+/// What can be said of a quantity.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum QuantityClass {
+    /// A tag on it is redundant.
+    Redundant,
+    /// It follows from the readings.
+    Observable,
+    /// It can't be known from these meters.
+    Unobservable,
+}
+
+/// What is said of a tag.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum Verdict {
+    /// It agrees with the rest, and a bias of the stated size would have shown.
+    Trusted,
+    /// It is named by a finding, or its statistic lies beyond the limit where no search was made.
+    Suspect,
+    /// A bias of ten sigmas would not show.
+    Unchecked,
+    /// It took no part: no reading, a bad one, or one without uncertainty.
+    Excluded,
+}
+
+/// A tag or a soft given in one balance.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct TagBalance {
+    /// Reading after known corrections; absent where excluded.
+    pub measured: Option<f64>,
+    /// Its standard uncertainty.
+    pub sigma: Option<f64>,
+    /// Samples behind it.
+    pub samples: u32,
+    /// Balanced value; absent where it can't be known.
+    pub reconciled: Option<f64>,
+    /// Standard uncertainty of the balanced value.
+    pub reconciled_sigma: Option<f64>,
+    /// Reconciled minus measured.
+    pub correction: Option<f64>,
+    /// Variance of the correction over sigma squared, 0 to 1.
+    pub redundancy: Option<f64>,
+    /// Size of the correction in its own sigmas; absent where nonredundant.
+    pub statistic: Option<f64>,
+    /// Smallest bias that would show with 80 % probability; absent where nonredundant.
+    pub minimum_detectable_bias: Option<f64>,
+    /// Whether anything checks it.
+    pub class: TagClass,
+    /// What is said of it.
+    pub verdict: Verdict,
+}
+
+/// A quantity in one balance.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct QuantityBalance {
+    /// Balanced value; absent where it can't be known.
+    pub value: Option<f64>,
+    /// Its standard uncertainty.
+    pub sigma: Option<f64>,
+    /// The part of it that is drawn anew each period; absent where no tag's is known.
+    pub repeat_sigma: Option<f64>,
+    /// Whether the value lies at a bound.
+    pub at_bound: bool,
+    /// What can be said of it.
+    pub class: QuantityClass,
+}
+
+/// An indicator in one balance; its value is absent where it can't be known.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct IndicatorBalance {
+    /// Value, SI.
+    pub value: Option<f64>,
+    /// Its standard uncertainty.
+    pub sigma: Option<f64>,
+    /// The part of it that is drawn anew each period.
+    pub repeat_sigma: Option<f64>,
+}
+
+/// The global test: weighted sum of squares against the chi-square distribution.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct GlobalTest {
+    /// Sum of squared sigma-scaled deviations.
+    pub statistic: f64,
+    /// Degrees of freedom.
+    pub degrees_of_freedom: u32,
+    /// The 95 % point.
+    pub critical: f64,
+    /// Whether the statistic lies below it.
+    pub passes: bool,
+}
+
+/// How the solve of a balance ended.
+#[derive(Clone, Debug, Default, PartialEq, Eq)]
+pub enum Outcome {
+    /// It was not run.
+    #[default]
+    NotRun,
+    /// Every balance closes and the sum of squares is least.
+    Converged,
+    /// No state closes the balances near these readings; says which equations and tags pull apart.
+    NotFound {
+        /// A sentence for people.
+        reason: String,
+    },
+}
+
+/// One balance. Where it did not converge the lists are empty: it holds no values.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Balance {
+    /// How the solve ended.
+    pub outcome: Outcome,
+    /// Steps of the solve.
+    pub iterations: u32,
+    /// The global test of the balance without findings.
+    pub global_test: Option<GlobalTest>,
+    /// One for each tag of the plant, in its order.
+    pub tags: Vec<TagBalance>,
+    /// One for each soft given.
+    pub givens: Vec<TagBalance>,
+    /// One for each quantity that takes part.
+    pub quantities: Vec<QuantityBalance>,
+    /// One for each indicator.
+    pub indicators: Vec<IndicatorBalance>,
+    /// What the user should know.
+    pub warnings: Vec<String>,
+}
+
+/// What a list of tags, givens, quantities or indicators of a balance is named and shown in.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Label {
+    /// Name of the tag, given, quantity or indicator.
+    pub name: String,
+    /// For tags and givens the quantity or indicator it speaks of; absent for a tag that reads nothing.
+    pub quantity: Option<String>,
+    /// Unit in which its value is written.
+    pub unit: crate::quantity::Unit,
+}

@@ -3,5 +3,6 @@
 //! SI units throughout: Pa, K, J/kg, J/(kg K), m3/kg.
 
 pub mod scalar;
+pub mod water;
 
 pub use scalar::{Dual, Scalar};

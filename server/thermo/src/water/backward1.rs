@@ -1,0 +1,36 @@
+//! Starting values in region 1: the backward equations of section 5.2 of IAPWS R7-97(2012), good to 25 mK.
+
+use super::backward1_table::{T_PH, T_PS};
+use super::polynomial::{Table, powers};
+
+static TABLE_PH: Table<20> = Table::new(&T_PH, 0, 0);
+static TABLE_PS: Table<20> = Table::new(&T_PS, 0, 0);
+
+/// Equation (11): temperature (K) by pressure (Pa) and enthalpy (J/kg).
+pub(super) fn temperature_ph(pressure: f64, enthalpy: f64) -> f64 {
+    TABLE_PH.value(&powers::<7, 0>(pressure / 1e6), &powers::<33, 0>(enthalpy / 2500e3 + 1.0))
+}
+
+/// Equation (13): temperature (K) by pressure (Pa) and entropy (J/(kg K)).
+pub(super) fn temperature_ps(pressure: f64, entropy: f64) -> f64 {
+    TABLE_PS.value(&powers::<5, 0>(pressure / 1e6), &powers::<33, 0>(entropy / 1e3 + 2.0))
+}
+
+#[cfg(test)]
+mod tests {
+    use crate::water::test_support::same_digits;
+
+    #[test]
+    fn table_7() {
+        same_digits(super::temperature_ph(3e6, 500e3), 0.391798509e3, 9);
+        same_digits(super::temperature_ph(80e6, 500e3), 0.378108626e3, 9);
+        same_digits(super::temperature_ph(80e6, 1500e3), 0.611041229e3, 9);
+    }
+
+    #[test]
+    fn table_9() {
+        same_digits(super::temperature_ps(3e6, 0.5e3), 0.307842258e3, 9);
+        same_digits(super::temperature_ps(80e6, 0.5e3), 0.309979785e3, 9);
+        same_digits(super::temperature_ps(80e6, 3e3), 0.565899909e3, 9);
+    }
+}

@@ -1,0 +1,60 @@
+//! Starting values in region 3: the backward equations of IAPWS SR3-03(2014), good to 25 mK and 0.01 % of the volume.
+
+use super::backward3_table::{T_PH_A, T_PH_B, T_PS_A, T_PS_B, V_PH_A, V_PH_B, V_PS_A, V_PS_B};
+use super::polynomial::{Table, powers};
+
+static T_PH_A_TABLE: Table<32> = Table::new(&T_PH_A, 12, 0);
+static T_PH_B_TABLE: Table<36> = Table::new(&T_PH_B, 12, 0);
+static V_PH_A_TABLE: Table<32> = Table::new(&V_PH_A, 12, 0);
+static V_PH_B_TABLE: Table<32> = Table::new(&V_PH_B, 12, 0);
+static T_PS_A_TABLE: Table<36> = Table::new(&T_PS_A, 12, 0);
+static T_PS_B_TABLE: Table<28> = Table::new(&T_PS_B, 12, 0);
+static V_PS_A_TABLE: Table<28> = Table::new(&V_PS_A, 12, 0);
+static V_PS_B_TABLE: Table<32> = Table::new(&V_PS_B, 12, 0);
+
+/// Critical entropy, the boundary between subregions 3a and 3b for functions of (p,s), J/(kg K).
+const CRITICAL_ENTROPY: f64 = 4.41202148223476e3;
+
+/// Equation (1): the boundary between subregions 3a and 3b for functions of (p,h), J/kg.
+fn enthalpy_ab(pressure: f64) -> f64 {
+    const N: [f64; 4] =
+        [0.201464004206875e4, 0.374696550136983e1, -0.219921901054187e-1, 0.875131686009950e-4];
+    let pi = pressure / 1e6;
+    (N[0] + pi * (N[1] + pi * (N[2] + pi * N[3]))) * 1e3
+}
+
+/// Equations (2) to (5): temperature (K) and volume (m3/kg) by pressure (Pa) and enthalpy (J/kg).
+pub(super) fn temperature_volume_ph(pressure: f64, enthalpy: f64) -> (f64, f64) {
+    let pi = pressure / 100e6;
+    if enthalpy <= enthalpy_ab(pressure) {
+        let (eta_t, eta_v) = (enthalpy / 2300e3 - 0.615, enthalpy / 2100e3 - 0.727);
+        (
+            760.0 * T_PH_A_TABLE.value(&powers::<25, 12>(pi + 0.240), &powers::<23, 0>(eta_t)),
+            0.0028 * V_PH_A_TABLE.value(&powers::<21, 12>(pi + 0.128), &powers::<23, 0>(eta_v)),
+        )
+    } else {
+        let powers_of_eta = powers::<17, 0>(enthalpy / 2800e3 - 0.720);
+        (
+            860.0 * T_PH_B_TABLE.value(&powers::<21, 12>(pi + 0.298), &powers_of_eta),
+            0.0088 * V_PH_B_TABLE.value(&powers::<15, 12>(pi + 0.0661), &powers_of_eta),
+        )
+    }
+}
+
+/// Equations (6) to (9): temperature (K) and volume (m3/kg) by pressure (Pa) and entropy (J/(kg K)).
+pub(super) fn temperature_volume_ps(pressure: f64, entropy: f64) -> (f64, f64) {
+    let pi = pressure / 100e6;
+    if entropy <= CRITICAL_ENTROPY {
+        let (sigma_t, sigma_v) = (entropy / 4.4e3 - 0.703, entropy / 4.4e3 - 0.755);
+        (
+            760.0 * T_PS_A_TABLE.value(&powers::<23, 12>(pi + 0.240), &powers::<37, 0>(sigma_t)),
+            0.0028 * V_PS_A_TABLE.value(&powers::<19, 12>(pi + 0.187), &powers::<29, 0>(sigma_v)),
+        )
+    } else {
+        let (sigma_t, sigma_v) = (entropy / 5.3e3 - 0.818, entropy / 5.3e3 - 0.816);
+        (
+            860.0 * T_PS_B_TABLE.value(&powers::<27, 12>(pi + 0.760), &powers::<25, 0>(sigma_t)),
+            0.0088 * V_PS_B_TABLE.value(&powers::<15, 12>(pi + 0.298), &powers::<13, 0>(sigma_v)),
+        )
+    }
+}

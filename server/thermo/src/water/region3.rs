@@ -1,0 +1,160 @@
+//! Region 3, around the critical point: equation (28) of IAPWS R7-97(2012), the Helmholtz free energy over density
+//! and temperature, with the density found for a pressure.
+
+use super::polynomial::{Table, powers};
+use super::region3_table::HELMHOLTZ;
+use super::{CRITICAL_DENSITY, CRITICAL_TEMPERATURE, GAS_CONSTANT, Partial, Phase, Properties, WaterError};
+
+/// Coefficient of the logarithm of the density, the first of table 30 of IAPWS R7-97(2012).
+const LOGARITHM: f64 = 0.10658070028513e1;
+
+/// Exponents I reach from 0 to 11, J from 0 to 26.
+const I_COUNT: usize = 12;
+const J_COUNT: usize = 27;
+static TABLE: Table<40> = Table::new(&HELMHOLTZ, 0, 0);
+
+/// A density above that of any state of the region, kg/m3: where the search for a liquid begins.
+const DENSEST: f64 = 800.0;
+
+/// One quantity by density and temperature.
+#[derive(Clone, Copy)]
+pub(super) struct Slopes {
+    pub(super) value: f64,
+    pub(super) by_density: f64,
+    pub(super) by_temperature: f64,
+}
+
+/// What the equation gives at a density and temperature.
+pub(super) struct ByDensity {
+    pub(super) pressure: Slopes,
+    pub(super) enthalpy: Slopes,
+    pub(super) entropy: Slopes,
+}
+
+/// Table 31 of IAPWS R7-97(2012) and its derivatives.
+#[inline]
+pub(super) fn by_density(density: f64, temperature: f64) -> ByDensity {
+    let delta = density / CRITICAL_DENSITY;
+    let tau = CRITICAL_TEMPERATURE / temperature;
+    let sums = TABLE.sums(&powers::<I_COUNT, 0>(delta), &powers::<J_COUNT, 0>(tau));
+    let value = LOGARITHM * delta.ln() + sums.value;
+    let by_delta = LOGARITHM + sums.a;
+    let by_delta_twice = sums.aa - LOGARITHM;
+    let r = GAS_CONSTANT;
+    let rt = r * temperature;
+    let pressure_by_temperature = density * r * (by_delta - sums.ab);
+    ByDensity {
+        pressure: Slopes {
+            value: density * rt * by_delta,
+            by_density: rt * (2.0 * by_delta + by_delta_twice),
+            by_temperature: pressure_by_temperature,
+        },
+        enthalpy: Slopes {
+            value: rt * (sums.b + by_delta),
+            by_density: rt / density * (sums.ab + by_delta + by_delta_twice),
+            by_temperature: r * (by_delta - sums.ab - sums.bb),
+        },
+        entropy: Slopes {
+            value: r * (sums.b - value),
+            by_density: -pressure_by_temperature / (density * density),
+            by_temperature: -r * sums.bb / temperature,
+        },
+    }
+}
+
+impl ByDensity {
+    /// The same as functions of pressure and temperature.
+    #[inline]
+    pub(super) fn by_pressure(&self, density: f64) -> Properties {
+        let density_by_pressure = 1.0 / self.pressure.by_density;
+        let density_by_temperature = -self.pressure.by_temperature * density_by_pressure;
+        let partial = |quantity: Slopes| Partial {
+            value: quantity.value,
+            by_pressure: quantity.by_density * density_by_pressure,
+            by_temperature: quantity.by_temperature + quantity.by_density * density_by_temperature,
+        };
+        let volume = 1.0 / density;
+        Properties {
+            volume: partial(Slopes { value: volume, by_density: -volume * volume, by_temperature: 0.0 }),
+            enthalpy: partial(self.enthalpy),
+            entropy: partial(self.entropy),
+        }
+    }
+}
+
+/// Properties of one phase at pressure and temperature.
+pub(super) fn properties(phase: Phase, pressure: f64, temperature: f64) -> Result<Properties, WaterError> {
+    let density = density(phase, pressure, temperature)?;
+    let state = by_density(density, temperature);
+    if state.pressure.by_density > 0.0 {
+        Ok(state.by_pressure(density))
+    } else {
+        Err(WaterError::Unstable { phase, pressure, temperature })
+    }
+}
+
+/// The isotherm p(density) as a polynomial in the reduced density: the sums over the temperature are done once.
+struct Isotherm {
+    coefficients: [f64; I_COUNT],
+    scale: f64,
+}
+
+impl Isotherm {
+    fn new(temperature: f64) -> Self {
+        let mut coefficients =
+            TABLE.contract::<I_COUNT, J_COUNT>(&powers::<J_COUNT, 0>(CRITICAL_TEMPERATURE / temperature));
+        for (i, coefficient) in coefficients.iter_mut().enumerate() {
+            *coefficient *= i as f64;
+        }
+        coefficients[0] = LOGARITHM;
+        Self { coefficients, scale: CRITICAL_DENSITY * GAS_CONSTANT * temperature }
+    }
+
+    /// Pressure and its derivative by the reduced density.
+    #[inline]
+    fn pressure(&self, delta: f64) -> (f64, f64) {
+        let (mut sum, mut slope) = (0.0, 0.0);
+        for coefficient in self.coefficients.iter().rev() {
+            slope = slope * delta + sum;
+            sum = sum * delta + coefficient;
+        }
+        (self.scale * delta * sum, self.scale * (sum + delta * slope))
+    }
+}
+
+/// The density of a phase at pressure and temperature, kg/m3.
+///
+/// Newton's method from outside: a liquid's isotherm is convex in the density, a vapour's concave, so that steps from
+/// the dense or the thin end come monotonically to the root, and to none if there is none. At and above the critical
+/// temperature there is one root for both phases and the end is chosen by the critical isochore.
+pub(super) fn density(phase: Phase, pressure: f64, temperature: f64) -> Result<f64, WaterError> {
+    let isotherm = Isotherm::new(temperature);
+    let supercritical = temperature >= CRITICAL_TEMPERATURE;
+    let dense = if supercritical { pressure > isotherm.pressure(1.0).0 } else { phase == Phase::Liquid };
+    let unstable = Err(WaterError::Unstable { phase, pressure, temperature });
+    let mut delta = if dense { DENSEST / CRITICAL_DENSITY } else { pressure / isotherm.scale };
+    for _ in 0..MOST_STEPS {
+        let (value, slope) = isotherm.pressure(delta);
+        let step = (pressure - value) / slope;
+        if !(slope > 0.0) {
+            return unstable;
+        }
+        let next = delta + step;
+        let outward = if dense { step >= 0.0 } else { step <= 0.0 };
+        if outward || step.abs() < RESOLUTION * delta {
+            return Ok(next * CRITICAL_DENSITY);
+        }
+        let passed = if dense { next < 1.0 } else { next > 1.0 };
+        if passed && !supercritical {
+            return unstable;
+        }
+        delta = if passed { 0.5 * (delta + 1.0) } else { next };
+    }
+    Ok(delta * CRITICAL_DENSITY)
+}
+
+/// Relative step of the density after which Newton's next one would be below a rounding error.
+const RESOLUTION: f64 = 1e-9;
+
+/// Only at the critical point itself, a threefold root, are more than a dozen steps taken.
+const MOST_STEPS: usize = 100;

@@ -5,6 +5,7 @@
 //! readings' settings) are in SI; values whose dimension depends on the quantity they are given for keep the unit
 //! they were written with ([`Amount`]) until they are held against that quantity.
 
+pub use crate::quantity::Amount;
 use crate::quantity::{Dimension, Unit};
 
 /// A stretch of the plant file, in bytes.
@@ -23,15 +24,6 @@ pub struct Located<T> {
     pub value: T,
     /// Where it says so.
     pub span: Span,
-}
-
-/// A number with the unit it was written with.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Amount {
-    /// The number as written.
-    pub number: f64,
-    /// Its unit; [`Unit::ONE`] for a bare number.
-    pub unit: Unit,
 }
 
 /// One plant file, read.

@@ -58,3 +58,40 @@ pub(super) fn temperature_volume_ps(pressure: f64, entropy: f64) -> (f64, f64) {
         )
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::water::test_support::same_digits;
+
+    #[test]
+    fn tables_5_and_8() {
+        for (pressure, enthalpy, temperature, volume) in [
+            (20.0, 1700.0, 6.293083892e2, 1.749903962e-3),
+            (50.0, 2000.0, 6.905718338e2, 1.908139035e-3),
+            (100.0, 2100.0, 7.336163014e2, 1.676229776e-3),
+            (20.0, 2500.0, 6.418418053e2, 6.670547043e-3),
+            (50.0, 2400.0, 7.351848618e2, 2.801244590e-3),
+            (100.0, 2700.0, 8.420460876e2, 2.404234998e-3),
+        ] {
+            let found = super::temperature_volume_ph(pressure * 1e6, enthalpy * 1e3);
+            same_digits(found.0, temperature, 10);
+            same_digits(found.1, volume, 10);
+        }
+    }
+
+    #[test]
+    fn tables_12_and_15() {
+        for (pressure, entropy, temperature, volume) in [
+            (20.0, 3.8, 6.282959869e2, 1.733791463e-3),
+            (50.0, 3.6, 6.297158726e2, 1.469680170e-3),
+            (100.0, 4.0, 7.056880237e2, 1.555893131e-3),
+            (20.0, 5.0, 6.401176443e2, 6.262101987e-3),
+            (50.0, 4.5, 7.163687517e2, 2.332634294e-3),
+            (100.0, 5.0, 8.474332825e2, 2.449610757e-3),
+        ] {
+            let found = super::temperature_volume_ps(pressure * 1e6, entropy * 1e3);
+            same_digits(found.0, temperature, 10);
+            same_digits(found.1, volume, 10);
+        }
+    }
+}

@@ -4,15 +4,14 @@ use super::error::check_pressure;
 use super::region::highest_temperature;
 use super::saturation::{AlongSaturation, Saturated};
 use super::{
-    CRITICAL_PRESSURE, HIGHEST_PRESSURE, LOWEST_PRESSURE, LOWEST_TEMPERATURE, Partial, Properties,
-    REGION_1_HIGHEST_TEMPERATURE, REGION_2_HIGHEST_TEMPERATURE, REGION_3_LOWEST_PRESSURE, Region, WaterError,
+    CRITICAL_DENSITY, CRITICAL_PRESSURE, CRITICAL_TEMPERATURE, HIGHEST_PRESSURE, HIGHEST_TEMPERATURE,
+    LOWEST_PRESSURE, LOWEST_TEMPERATURE, Partial, Properties, REGION_1_HIGHEST_TEMPERATURE,
+    REGION_2_HIGHEST_TEMPERATURE, REGION_3_LOWEST_PRESSURE, REGION_5_HIGHEST_PRESSURE, Region, WaterError,
     backward1, backward2, backward3, boundary, region3, saturation,
 };
 
 /// What is given besides the pressure. It rises with temperature in every region.
 pub(super) trait Coordinate {
-    /// No state of the formulation has less or more.
-    const BOUNDS: (f64, f64);
     /// No state of region 1 has more.
     const HIGHEST_IN_1: f64;
     /// No state of region 2 has less.
@@ -32,7 +31,6 @@ pub(super) struct Enthalpy;
 pub(super) struct Entropy;
 
 impl Coordinate for Enthalpy {
-    const BOUNDS: (f64, f64) = (-1e3, 7.5e6);
     const HIGHEST_IN_1: f64 = 1.671e6;
     const LOWEST_IN_2: f64 = 2.500e6;
 
@@ -64,7 +62,6 @@ impl Coordinate for Enthalpy {
 }
 
 impl Coordinate for Entropy {
-    const BOUNDS: (f64, f64) = (-20.0, 14.5e3);
     const HIGHEST_IN_1: f64 = 3.779e3;
     const LOWEST_IN_2: f64 = 5.0e3;
 
@@ -108,21 +105,19 @@ pub(super) enum Location {
 /// Finds the state with `value` of the coordinate at a pressure.
 pub(super) fn locate<C: Coordinate>(pressure: f64, value: f64) -> Result<Location, WaterError> {
     check_pressure(pressure, LOWEST_PRESSURE, HIGHEST_PRESSURE)?;
-    if !(C::BOUNDS.0..=C::BOUNDS.1).contains(&value) {
+    if !value.is_finite() {
         return Err(outside::<C>(pressure, value));
     }
     if pressure > REGION_3_LOWEST_PRESSURE {
         let borders = (REGION_1_HIGHEST_TEMPERATURE, boundary::temperature(pressure));
-        return match explicit::<C>(pressure, value, borders) {
-            Some(found) => found,
+        return match explicit::<C>(pressure, value, borders)? {
+            Some(found) => Ok(found),
             None => dense::<C>(pressure, value),
         };
     }
     let (temperature, temperature_by_pressure) = saturation::temperature(pressure)?;
-    match explicit::<C>(pressure, value, (temperature, temperature)) {
-        Some(found) => found,
-        None => Ok(Location::Mixture { temperature, temperature_by_pressure }),
-    }
+    let found = explicit::<C>(pressure, value, (temperature, temperature))?;
+    Ok(found.unwrap_or(Location::Mixture { temperature, temperature_by_pressure }))
 }
 
 /// Looks in regions 1, 2 and 5. `borders` are the highest temperature of region 1 and the lowest of region 2 at this
@@ -131,58 +126,43 @@ fn explicit<C: Coordinate>(
     pressure: f64,
     value: f64,
     borders: (f64, f64),
-) -> Option<Result<Location, WaterError>> {
+) -> Result<Option<Location>, WaterError> {
     if value <= C::HIGHEST_IN_1 {
-        let start = C::start_1(pressure, value);
-        if start <= borders.0 + START_TOLERANCE {
-            match solve::<C>(Region::One, pressure, value, start) {
-                Some(found) if found.0 > borders.0 => return None,
-                Some(found) => return Some(within::<C>(Region::One, pressure, value, found)),
-                None => return Some(Err(outside::<C>(pressure, value))),
-            }
-        }
-        return None;
+        let range = (LOWEST_TEMPERATURE - ROUNDING, borders.0);
+        return match solve::<C>(Region::One, pressure, value, C::start_1(pressure, value), range)? {
+            Root::Below => Err(outside::<C>(pressure, value)),
+            Root::Found(location) => Ok(Some(location)),
+            Root::Above => Ok(None),
+        };
     }
     if value < C::LOWEST_IN_2 {
-        return None;
+        return Ok(None);
     }
-    let start = C::start_2(pressure, value);
-    if start < borders.1 - START_TOLERANCE {
-        return None;
-    }
-    match solve::<C>(Region::Two, pressure, value, start) {
-        Some(found) if found.0 < borders.1 => None,
-        Some(found) if found.0 <= REGION_2_HIGHEST_TEMPERATURE + ROUNDING => {
-            Some(within::<C>(Region::Two, pressure, value, found))
-        }
-        _ => match solve::<C>(Region::Five, pressure, value, REGION_5_START) {
-            Some(found) => Some(within::<C>(Region::Five, pressure, value, found)),
-            None => Some(Err(outside::<C>(pressure, value))),
-        },
+    let range = (borders.1, REGION_2_HIGHEST_TEMPERATURE + ROUNDING);
+    match solve::<C>(Region::Two, pressure, value, C::start_2(pressure, value), range)? {
+        Root::Below => Ok(None),
+        Root::Found(location) => Ok(Some(location)),
+        Root::Above => hot::<C>(pressure, value).map(Some),
     }
 }
 
-/// Backward equations of a region that is left by more than this don't place a state there, K.
-const START_TOLERANCE: f64 = 1.0;
+/// Looks in region 5.
+fn hot<C: Coordinate>(pressure: f64, value: f64) -> Result<Location, WaterError> {
+    if pressure <= REGION_5_HIGHEST_PRESSURE {
+        let range = (REGION_2_HIGHEST_TEMPERATURE - SEAM, HIGHEST_TEMPERATURE + ROUNDING);
+        if let Root::Found(location) = solve::<C>(Region::Five, pressure, value, REGION_5_START, range)? {
+            return Ok(location);
+        }
+    }
+    Err(outside::<C>(pressure, value))
+}
+
 /// Heat capacities hardly vary in region 5: any start does, K.
 const REGION_5_START: f64 = 1600.0;
-/// Temperatures at the ends of the range may be missed by this, K.
+/// Temperatures at the ends of the formulation may be missed by this, K.
 const ROUNDING: f64 = 1e-6;
-
-/// Refuses what was found beyond the ends of the formulation.
-fn within<C: Coordinate>(
-    region: Region,
-    pressure: f64,
-    value: f64,
-    (temperature, given): (f64, Partial),
-) -> Result<Location, WaterError> {
-    let range = LOWEST_TEMPERATURE - ROUNDING..=highest_temperature(pressure) + ROUNDING;
-    if range.contains(&temperature) {
-        Ok(Location::Explicit { region, temperature, given })
-    } else {
-        Err(outside::<C>(pressure, value))
-    }
-}
+/// The equations of regions 2 and 5 differ a little where they meet. A value between them counts as region 5's, K.
+const SEAM: f64 = 1.0;
 
 /// The error of a value that no state at this pressure has.
 #[cold]
@@ -195,24 +175,41 @@ fn outside<C: Coordinate>(pressure: f64, value: f64) -> WaterError {
     }
 }
 
-/// Newton's method for the temperature in a region that is explicit in (p,T). Returns the temperature with the
-/// derivatives of the coordinate there; `None` if the root lies beyond where the equation is evaluated.
+/// Where a root lies with respect to a range of temperatures.
+enum Root {
+    Below,
+    Found(Location),
+    Above,
+}
+
+/// Newton's method for the temperature in a region that is explicit in (p,T), kept between the temperatures of
+/// `range`. The coordinate rises with temperature, so that a step out of an end tells that the root is beyond it.
 #[inline]
-fn solve<C: Coordinate>(region: Region, pressure: f64, value: f64, start: f64) -> Option<(f64, Partial)> {
-    let (lowest, highest) = region.continued_temperatures();
-    let mut temperature = start.clamp(lowest, highest);
+fn solve<C: Coordinate>(
+    region: Region,
+    pressure: f64,
+    value: f64,
+    start: f64,
+    range: (f64, f64),
+) -> Result<Root, WaterError> {
+    let (lowest, highest) = range;
+    // A start that isn't a number begins at the lower end.
+    let mut temperature = start.max(lowest).min(highest);
     for _ in 0..MOST_STEPS {
-        let given = C::at(region, pressure, temperature).ok()?;
+        let given = C::at(region, pressure, temperature)?;
         let next = temperature + (value - given.value) / given.by_temperature;
+        if next < lowest && temperature == lowest {
+            return Ok(Root::Below);
+        }
+        if next > highest && temperature == highest {
+            return Ok(Root::Above);
+        }
         if (next - temperature).abs() < RESOLUTION {
-            return Some((next, given));
+            return Ok(Root::Found(Location::Explicit { region, temperature: next, given }));
         }
-        if next <= lowest && temperature == lowest || next >= highest && temperature == highest {
-            return None;
-        }
-        temperature = next.clamp(lowest, highest);
+        temperature = next.max(lowest).min(highest);
     }
-    None
+    Err(outside::<C>(pressure, value))
 }
 
 /// Step after which the next one would be below a rounding error, and over which no derivative changes, K.
@@ -221,12 +218,10 @@ const MOST_STEPS: usize = 30;
 
 /// Looks in region 3 and in the two-phase states below it.
 fn dense<C: Coordinate>(pressure: f64, value: f64) -> Result<Location, WaterError> {
-    let mut region = Region::ThreeVapour;
     if pressure < CRITICAL_PRESSURE {
         let liquid = saturation::liquid(pressure)?;
-        if value < C::of_saturated(&liquid).value {
-            region = Region::ThreeLiquid;
-        } else if value <= C::of_saturated(&saturation::vapour(pressure)?).value {
+        let vapour = saturation::vapour(pressure)?;
+        if (C::of_saturated(&liquid).value..=C::of_saturated(&vapour).value).contains(&value) {
             return Ok(Location::Mixture {
                 temperature: liquid.temperature.value,
                 temperature_by_pressure: liquid.temperature.by_pressure,
@@ -246,6 +241,8 @@ fn dense<C: Coordinate>(pressure: f64, value: f64) -> Result<Location, WaterErro
         temperature += temperature_step;
         if density_step.abs() < 1e-9 * density && temperature_step.abs() < RESOLUTION {
             let properties = region3::by_density(density, temperature).by_pressure(density);
+            let liquid = temperature < CRITICAL_TEMPERATURE && density > CRITICAL_DENSITY;
+            let region = if liquid { Region::ThreeLiquid } else { Region::ThreeVapour };
             return Ok(Location::Dense { region, temperature, properties });
         }
     }

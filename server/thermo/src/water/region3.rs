@@ -13,9 +13,6 @@ const I_COUNT: usize = 12;
 const J_COUNT: usize = 27;
 static TABLE: Table<40> = Table::new(&HELMHOLTZ, 0, 0);
 
-/// A density above that of any state of the region, kg/m3: where the search for a liquid begins.
-const DENSEST: f64 = 800.0;
-
 /// One quantity by density and temperature.
 #[derive(Clone, Copy)]
 pub(super) struct Slopes {
@@ -124,37 +121,86 @@ impl Isotherm {
 
 /// The density of a phase at pressure and temperature, kg/m3.
 ///
-/// Newton's method from outside: a liquid's isotherm is convex in the density, a vapour's concave, so that steps from
-/// the dense or the thin end come monotonically to the root, and to none if there is none. At and above the critical
-/// temperature there is one root for both phases and the end is chosen by the critical isochore.
+/// Newton's method from outside: below the critical temperature a liquid's isotherm is convex in the density and a
+/// vapour's concave, so that steps from the dense or the thin end come monotonically to the root, and leave the
+/// phase's half if there is none. At and above the critical temperature the one root is kept between bounds.
 pub(super) fn density(phase: Phase, pressure: f64, temperature: f64) -> Result<f64, WaterError> {
     let isotherm = Isotherm::new(temperature);
     let supercritical = temperature >= CRITICAL_TEMPERATURE;
     let dense = if supercritical { pressure > isotherm.pressure(1.0).0 } else { phase == Phase::Liquid };
-    let unstable = Err(WaterError::Unstable { phase, pressure, temperature });
-    let mut delta = if dense { DENSEST / CRITICAL_DENSITY } else { pressure / isotherm.scale };
+    let (mut low, mut high) = if dense { (1.0, DENSEST) } else { (0.0, 1.0) };
+    let mut delta = if dense { DENSEST } else { pressure / isotherm.scale };
     for _ in 0..MOST_STEPS {
         let (value, slope) = isotherm.pressure(delta);
-        let step = (pressure - value) / slope;
-        if !(slope > 0.0) {
-            return unstable;
-        }
-        let next = delta + step;
-        let outward = if dense { step >= 0.0 } else { step <= 0.0 };
-        if outward || step.abs() < RESOLUTION * delta {
+        let missing = pressure - value;
+        let next = delta + missing / slope;
+        if (next - delta).abs() < RESOLUTION * delta || missing.abs() < ROUNDING * pressure {
             return Ok(next * CRITICAL_DENSITY);
         }
-        let passed = if dense { next < 1.0 } else { next > 1.0 };
-        if passed && !supercritical {
-            return unstable;
+        if missing < 0.0 {
+            high = delta;
+        } else {
+            low = delta;
         }
-        delta = if passed { 0.5 * (delta + 1.0) } else { next };
+        let inside = slope > 0.0 && low < next && next < high;
+        if !inside && !supercritical {
+            return Err(WaterError::Unstable { phase, pressure, temperature });
+        }
+        delta = if inside { next } else { 0.5 * (low + high) };
     }
     Ok(delta * CRITICAL_DENSITY)
 }
 
+/// A reduced density above that of any state of the region: where the search for a liquid begins.
+const DENSEST: f64 = 2.5;
 /// Relative step of the density after which Newton's next one would be below a rounding error.
 const RESOLUTION: f64 = 1e-9;
-
-/// Only at the critical point itself, a threefold root, are more than a dozen steps taken.
+/// Relative rounding error of the pressure, all that can be asked for where isotherms are flat.
+const ROUNDING: f64 = 1e-13;
+/// Only next to the critical point, a threefold root, are more than a dozen steps taken.
 const MOST_STEPS: usize = 100;
+
+#[cfg(test)]
+mod tests {
+    use super::by_density;
+    use crate::water::test_support::same_digits;
+
+    /// Table 33 of IAPWS R7-97(2012): T/K, density -> p/MPa, h, u, s, cp, w.
+    #[test]
+    fn table_33() {
+        for (temperature, density, printed) in [
+            (
+                650.0,
+                500.0,
+                [0.255837018e2, 0.186343019e4, 0.181226279e4, 0.405427273e1, 0.138935717e2, 0.502005554e3],
+            ),
+            (
+                650.0,
+                200.0,
+                [0.222930643e2, 0.237512401e4, 0.226365868e4, 0.485438792e1, 0.446579342e2, 0.383444594e3],
+            ),
+            (
+                750.0,
+                500.0,
+                [0.783095639e2, 0.225868845e4, 0.210206932e4, 0.446971906e1, 0.634165359e1, 0.760696041e3],
+            ),
+        ] {
+            let state = by_density(density, temperature);
+            let properties = state.by_pressure(density);
+            let heat_capacity = properties.enthalpy.by_temperature;
+            let isentropic = properties.volume.by_pressure
+                + temperature * properties.volume.by_temperature.powi(2) / heat_capacity;
+            let computed = [
+                state.pressure.value / 1e6,
+                state.enthalpy.value / 1e3,
+                (state.enthalpy.value - state.pressure.value / density) / 1e3,
+                state.entropy.value / 1e3,
+                heat_capacity / 1e3,
+                1.0 / density / (-isentropic).sqrt(),
+            ];
+            for (value, printed) in computed.into_iter().zip(printed) {
+                same_digits(value, printed, 9);
+            }
+        }
+    }
+}

@@ -108,16 +108,23 @@ pub fn vapour(pressure: f64) -> Result<Saturated, WaterError> {
     saturated(Phase::Vapour, pressure)
 }
 
+/// Closer to the critical pressure than this, equation (31) and the equation of region 3 disagree by more than the
+/// pressures of liquid and vapour differ, so that one of the roots may be missing, Pa.
+const NEXT_TO_CRITICAL: f64 = 10.0;
+
 fn saturated(phase: Phase, pressure: f64) -> Result<Saturated, WaterError> {
-    let (temperature, temperature_by_pressure) = temperature(pressure)?;
-    let region = Region::of_phase(phase, pressure, temperature)?;
-    let properties = region.properties(pressure, temperature)?;
-    let along = |partial: Partial| AlongSaturation {
-        value: partial.value,
-        by_pressure: partial.by_pressure + partial.by_temperature * temperature_by_pressure,
+    let (value, by_pressure) = temperature(pressure)?;
+    // Next to the critical point the tangent is followed.
+    let touching = pressure.min(CRITICAL_PRESSURE - NEXT_TO_CRITICAL);
+    let (touching_temperature, slope) = temperature(touching)?;
+    let region = Region::of_phase(phase, touching, touching_temperature)?;
+    let properties = region.properties(touching, touching_temperature)?;
+    let along = |partial: Partial| {
+        let by_pressure = partial.by_pressure + partial.by_temperature * slope;
+        AlongSaturation { value: partial.value + by_pressure * (pressure - touching), by_pressure }
     };
     Ok(Saturated {
-        temperature: AlongSaturation { value: temperature, by_pressure: temperature_by_pressure },
+        temperature: AlongSaturation { value, by_pressure },
         volume: along(properties.volume),
         enthalpy: along(properties.enthalpy),
         entropy: along(properties.entropy),

@@ -2,7 +2,10 @@
 //!
 //! SI units throughout: Pa, K, J/kg, J/(kg K), m3/kg.
 
+pub mod liquid;
+pub mod property;
 pub mod scalar;
 pub mod water;
 
+pub use property::{Partial, PartialByEnthalpy, PartialByEntropy, Properties};
 pub use scalar::{Dual, Scalar};

@@ -29,12 +29,10 @@ mod state;
 #[cfg(test)]
 mod test_support;
 
+pub use crate::property::{Partial, PartialByEnthalpy, PartialByEntropy, Properties};
 pub use error::WaterError;
 pub use region::{Phase, Region};
-pub use state::{
-    PartialByEnthalpy, PartialByEntropy, Slope, State, enthalpy_ps, entropy_ph, temperature_ph,
-    temperature_ps, volume_ph,
-};
+pub use state::{Slope, State, enthalpy_ps, entropy_ph, temperature_ph, temperature_ps, volume_ph};
 
 /// Specific gas constant of water, J/(kg K): equation (1) of IAPWS R7-97(2012).
 pub const GAS_CONSTANT: f64 = 461.526;
@@ -59,25 +57,3 @@ const REGION_5_HIGHEST_PRESSURE: f64 = 50e6;
 const BOUNDARY_23_HIGHEST_TEMPERATURE: f64 = 863.15;
 /// Saturation pressure at 623.15 K, where regions 1, 2 and 3 meet, Pa.
 const REGION_3_LOWEST_PRESSURE: f64 = 16.5291642526045e6;
-
-/// One quantity at pressure and temperature with its first derivatives.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Partial {
-    /// The value.
-    pub value: f64,
-    /// Derivative by pressure at constant temperature, per Pa.
-    pub by_pressure: f64,
-    /// Derivative by temperature at constant pressure, per K.
-    pub by_temperature: f64,
-}
-
-/// Everything about a single phase at pressure and temperature.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct Properties {
-    /// Specific volume, m3/kg.
-    pub volume: Partial,
-    /// Specific enthalpy, J/kg. Its derivative by temperature is the isobaric heat capacity.
-    pub enthalpy: Partial,
-    /// Specific entropy, J/(kg K).
-    pub entropy: Partial,
-}

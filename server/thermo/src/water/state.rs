@@ -2,7 +2,7 @@
 
 use super::inverse::{Coordinate, Enthalpy, Entropy, Location, locate};
 use super::saturation::{self, AlongSaturation, Saturated};
-use super::{Properties, Region, WaterError};
+use super::{PartialByEnthalpy, PartialByEntropy, Properties, Region, WaterError};
 
 /// Derivatives of a state by one of its two inputs while the other is held.
 #[derive(Clone, Copy, Debug, PartialEq)]
@@ -38,28 +38,6 @@ pub struct State {
     pub by_pressure: Slope,
     /// Derivatives by the other input while the pressure is held.
     pub by_other: Slope,
-}
-
-/// A quantity of (p,h).
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct PartialByEnthalpy {
-    /// The value.
-    pub value: f64,
-    /// Derivative by pressure at constant enthalpy, per Pa.
-    pub by_pressure: f64,
-    /// Derivative by enthalpy at constant pressure, per J/kg.
-    pub by_enthalpy: f64,
-}
-
-/// A quantity of (p,s).
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub struct PartialByEntropy {
-    /// The value.
-    pub value: f64,
-    /// Derivative by pressure at constant entropy, per Pa.
-    pub by_pressure: f64,
-    /// Derivative by entropy at constant pressure, per J/(kg K).
-    pub by_entropy: f64,
 }
 
 impl State {

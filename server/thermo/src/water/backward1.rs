@@ -1,19 +1,19 @@
 //! Starting values in region 1: the backward equations of section 5.2 of IAPWS R7-97(2012), good to 25 mK.
 
-use super::backward1_table::{T_PH, T_PS};
-use super::polynomial::{Table, powers};
-
-static TABLE_PH: Table<20> = Table::new(&T_PH, 0, 0);
-static TABLE_PS: Table<20> = Table::new(&T_PS, 0, 0);
+use super::backward1_table::{TemperaturePh, TemperaturePs};
+use super::polynomial::{Powers, sum};
 
 /// Equation (11): temperature (K) by pressure (Pa) and enthalpy (J/kg).
 pub(super) fn temperature_ph(pressure: f64, enthalpy: f64) -> f64 {
-    TABLE_PH.value(&powers::<7, 0>(pressure / 1e6), &powers::<33, 0>(enthalpy / 2500e3 + 1.0))
+    sum::<TemperaturePh, 7, 0, _, _>(
+        &Powers::new(pressure / 1e6),
+        &Powers::<33, 0>::new(enthalpy / 2500e3 + 1.0),
+    )
 }
 
 /// Equation (13): temperature (K) by pressure (Pa) and entropy (J/(kg K)).
 pub(super) fn temperature_ps(pressure: f64, entropy: f64) -> f64 {
-    TABLE_PS.value(&powers::<5, 0>(pressure / 1e6), &powers::<33, 0>(entropy / 1e3 + 2.0))
+    sum::<TemperaturePs, 5, 0, _, _>(&Powers::new(pressure / 1e6), &Powers::<33, 0>::new(entropy / 1e3 + 2.0))
 }
 
 #[cfg(test)]

@@ -1,14 +1,9 @@
 //! Starting values in region 2: the backward equations of section 6.3 of IAPWS R7-97(2012), good to 25 mK.
 
-use super::backward2_table::{T_PH_A, T_PH_B, T_PH_C, T_PS_A, T_PS_B, T_PS_C};
-use super::polynomial::{Table, powers};
-
-static TABLE_PH_A: Table<36> = Table::new(&T_PH_A, 0, 0);
-static TABLE_PH_B: Table<40> = Table::new(&T_PH_B, 0, 0);
-static TABLE_PH_C: Table<24> = Table::new(&T_PH_C, 7, 0);
-static TABLE_PS_A: Table<48> = Table::new(&T_PS_A, 6, 27);
-static TABLE_PS_B: Table<44> = Table::new(&T_PS_B, 6, 0);
-static TABLE_PS_C: Table<32> = Table::new(&T_PS_C, 2, 0);
+use super::backward2_table::{
+    TemperaturePhA, TemperaturePhB, TemperaturePhC, TemperaturePsA, TemperaturePsB, TemperaturePsC,
+};
+use super::polynomial::{Powers, sum};
 
 /// Pressure up to which subregion 2a reaches, Pa.
 const HIGHEST_PRESSURE_A: f64 = 4e6;
@@ -28,11 +23,11 @@ pub(super) fn temperature_ph(pressure: f64, enthalpy: f64) -> f64 {
     let pi = pressure / 1e6;
     let eta = enthalpy / 2000e3;
     if pressure <= HIGHEST_PRESSURE_A {
-        TABLE_PH_A.value(&powers::<8, 0>(pi), &powers::<45, 0>(eta - 2.1))
+        sum::<TemperaturePhA, 8, 0, _, _>(&Powers::new(pi), &Powers::<45, 0>::new(eta - 2.1))
     } else if enthalpy >= enthalpy_bc(pressure) {
-        TABLE_PH_B.value(&powers::<10, 0>(pi - 2.0), &powers::<41, 0>(eta - 2.6))
+        sum::<TemperaturePhB, 10, 0, _, _>(&Powers::new(pi - 2.0), &Powers::<41, 0>::new(eta - 2.6))
     } else {
-        TABLE_PH_C.value(&powers::<14, 7>(pi + 25.0), &powers::<23, 0>(eta - 1.8))
+        sum::<TemperaturePhC, 14, 7, _, _>(&Powers::new(pi + 25.0), &Powers::<23, 0>::new(eta - 1.8))
     }
 }
 
@@ -41,11 +36,14 @@ pub(super) fn temperature_ps(pressure: f64, entropy: f64) -> f64 {
     let pi = pressure / 1e6;
     let sigma = entropy / 1e3;
     if pressure <= HIGHEST_PRESSURE_A {
-        TABLE_PS_A.value(&powers::<13, 6>(pi.sqrt().sqrt()), &powers::<46, 27>(sigma / 2.0 - 2.0))
+        sum::<TemperaturePsA, 13, 6, _, _>(
+            &Powers::new(pi.sqrt().sqrt()),
+            &Powers::<46, 27>::new(sigma / 2.0 - 2.0),
+        )
     } else if entropy >= ENTROPY_BC {
-        TABLE_PS_B.value(&powers::<12, 6>(pi), &powers::<13, 0>(10.0 - sigma / 0.7853))
+        sum::<TemperaturePsB, 12, 6, _, _>(&Powers::new(pi), &Powers::<13, 0>::new(10.0 - sigma / 0.7853))
     } else {
-        TABLE_PS_C.value(&powers::<10, 2>(pi), &powers::<6, 0>(2.0 - sigma / 2.9251))
+        sum::<TemperaturePsC, 10, 2, _, _>(&Powers::new(pi), &Powers::<6, 0>::new(2.0 - sigma / 2.9251))
     }
 }
 

@@ -1,16 +1,10 @@
 //! Starting values in region 3: the backward equations of IAPWS SR3-03(2014), good to 25 mK and 0.01 % of the volume.
 
-use super::backward3_table::{T_PH_A, T_PH_B, T_PS_A, T_PS_B, V_PH_A, V_PH_B, V_PS_A, V_PS_B};
-use super::polynomial::{Table, powers};
-
-static T_PH_A_TABLE: Table<32> = Table::new(&T_PH_A, 12, 0);
-static T_PH_B_TABLE: Table<36> = Table::new(&T_PH_B, 12, 0);
-static V_PH_A_TABLE: Table<32> = Table::new(&V_PH_A, 12, 0);
-static V_PH_B_TABLE: Table<32> = Table::new(&V_PH_B, 12, 0);
-static T_PS_A_TABLE: Table<36> = Table::new(&T_PS_A, 12, 0);
-static T_PS_B_TABLE: Table<28> = Table::new(&T_PS_B, 12, 0);
-static V_PS_A_TABLE: Table<28> = Table::new(&V_PS_A, 12, 0);
-static V_PS_B_TABLE: Table<32> = Table::new(&V_PS_B, 12, 0);
+use super::backward3_table::{
+    TemperaturePhA, TemperaturePhB, TemperaturePsA, TemperaturePsB, VolumePhA, VolumePhB, VolumePsA,
+    VolumePsB,
+};
+use super::polynomial::{Powers, sum};
 
 /// Critical entropy, the boundary between subregions 3a and 3b for functions of (p,s), J/(kg K).
 const CRITICAL_ENTROPY: f64 = 4.41202148223476e3;
@@ -29,14 +23,15 @@ pub(super) fn temperature_volume_ph(pressure: f64, enthalpy: f64) -> (f64, f64) 
     if enthalpy <= enthalpy_ab(pressure) {
         let (eta_t, eta_v) = (enthalpy / 2300e3 - 0.615, enthalpy / 2100e3 - 0.727);
         (
-            760.0 * T_PH_A_TABLE.value(&powers::<25, 12>(pi + 0.240), &powers::<23, 0>(eta_t)),
-            0.0028 * V_PH_A_TABLE.value(&powers::<21, 12>(pi + 0.128), &powers::<23, 0>(eta_v)),
+            760.0
+                * sum::<TemperaturePhA, 25, 12, _, _>(&Powers::new(pi + 0.240), &Powers::<23, 0>::new(eta_t)),
+            0.0028 * sum::<VolumePhA, 21, 12, _, _>(&Powers::new(pi + 0.128), &Powers::<23, 0>::new(eta_v)),
         )
     } else {
-        let powers_of_eta = powers::<17, 0>(enthalpy / 2800e3 - 0.720);
+        let powers_of_eta = Powers::<17, 0>::new(enthalpy / 2800e3 - 0.720);
         (
-            860.0 * T_PH_B_TABLE.value(&powers::<21, 12>(pi + 0.298), &powers_of_eta),
-            0.0088 * V_PH_B_TABLE.value(&powers::<15, 12>(pi + 0.0661), &powers_of_eta),
+            860.0 * sum::<TemperaturePhB, 21, 12, _, _>(&Powers::new(pi + 0.298), &powers_of_eta),
+            0.0088 * sum::<VolumePhB, 15, 12, _, _>(&Powers::new(pi + 0.0661), &powers_of_eta),
         )
     }
 }
@@ -47,14 +42,22 @@ pub(super) fn temperature_volume_ps(pressure: f64, entropy: f64) -> (f64, f64) {
     if entropy <= CRITICAL_ENTROPY {
         let (sigma_t, sigma_v) = (entropy / 4.4e3 - 0.703, entropy / 4.4e3 - 0.755);
         (
-            760.0 * T_PS_A_TABLE.value(&powers::<23, 12>(pi + 0.240), &powers::<37, 0>(sigma_t)),
-            0.0028 * V_PS_A_TABLE.value(&powers::<19, 12>(pi + 0.187), &powers::<29, 0>(sigma_v)),
+            760.0
+                * sum::<TemperaturePsA, 23, 12, _, _>(
+                    &Powers::new(pi + 0.240),
+                    &Powers::<37, 0>::new(sigma_t),
+                ),
+            0.0028 * sum::<VolumePsA, 19, 12, _, _>(&Powers::new(pi + 0.187), &Powers::<29, 0>::new(sigma_v)),
         )
     } else {
         let (sigma_t, sigma_v) = (entropy / 5.3e3 - 0.818, entropy / 5.3e3 - 0.816);
         (
-            860.0 * T_PS_B_TABLE.value(&powers::<27, 12>(pi + 0.760), &powers::<25, 0>(sigma_t)),
-            0.0088 * V_PS_B_TABLE.value(&powers::<15, 12>(pi + 0.298), &powers::<13, 0>(sigma_v)),
+            860.0
+                * sum::<TemperaturePsB, 27, 12, _, _>(
+                    &Powers::new(pi + 0.760),
+                    &Powers::<25, 0>::new(sigma_t),
+                ),
+            0.0088 * sum::<VolumePsB, 15, 12, _, _>(&Powers::new(pi + 0.298), &Powers::<13, 0>::new(sigma_v)),
         )
     }
 }

@@ -1,8 +1,8 @@
 //! Region 1, liquid water: equation (7) of IAPWS R7-97(2012), the Gibbs free energy over (p,T).
 
 use super::gibbs::{Gibbs, GibbsByTau};
-use super::polynomial::{Table, powers};
-use super::region1_table::GIBBS;
+use super::polynomial::{Powers, sums};
+use super::region1_table::Equation7;
 use super::{Partial, Properties};
 
 const REDUCING_PRESSURE: f64 = 16.53e6;
@@ -12,7 +12,6 @@ const REDUCING_TEMPERATURE: f64 = 1386.0;
 const I_COUNT: usize = 33;
 const J_COUNT: usize = 59;
 const J_ZERO: usize = 41;
-static TABLE: Table<36> = Table::new(&GIBBS, 0, J_ZERO);
 
 /// The arguments `a = 7.1 - pi` and `b = tau - 1.222` with what turns derivatives by them into logarithmic ones by
 /// pi and tau.
@@ -36,7 +35,7 @@ impl Arguments {
 #[inline]
 pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
     let Arguments { a, b, pi_per_a, tau_per_b } = Arguments::new(pressure, temperature);
-    let sums = TABLE.sums(&powers::<I_COUNT, 0>(a), &powers::<J_COUNT, J_ZERO>(b));
+    let sums = sums::<Equation7, I_COUNT, 0, J_COUNT, J_ZERO>(&Powers::new(a), &Powers::new(b));
     Gibbs {
         value: sums.value,
         pi: pi_per_a * sums.a,
@@ -51,7 +50,7 @@ pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
 #[inline]
 pub(super) fn enthalpy(pressure: f64, temperature: f64) -> Partial {
     let Arguments { a, b, pi_per_a, tau_per_b } = Arguments::new(pressure, temperature);
-    let sums = TABLE.sums_by_b(&powers::<I_COUNT, 0>(a), &powers::<J_COUNT, J_ZERO>(b));
+    let sums = sums::<Equation7, I_COUNT, 0, J_COUNT, J_ZERO>(&Powers::new(a), &Powers::new(b));
     GibbsByTau {
         tau: tau_per_b * sums.b,
         pi_tau: pi_per_a * tau_per_b * sums.ab,

@@ -1,8 +1,8 @@
 //! Region 2, steam: equations (15) to (17) of IAPWS R7-97(2012), the Gibbs free energy over (p,T).
 
 use super::gibbs::{Gibbs, GibbsByTau};
-use super::polynomial::{Table, powers};
-use super::region2_table::{IDEAL, RESIDUAL};
+use super::polynomial::{Powers, sums};
+use super::region2_table::{Equation16, Equation17};
 use super::{Partial, Properties};
 
 const REDUCING_PRESSURE: f64 = 1e6;
@@ -11,12 +11,10 @@ const REDUCING_TEMPERATURE: f64 = 540.0;
 /// Exponents of the ideal-gas part reach from -5 to 3.
 const IDEAL_COUNT: usize = 9;
 const IDEAL_ZERO: usize = 5;
-static IDEAL_TABLE: Table<12> = Table::new(&IDEAL, 0, IDEAL_ZERO);
 
 /// Exponents I of the residual part reach from 0 to 24, J from 0 to 58.
 const I_COUNT: usize = 25;
 const J_COUNT: usize = 59;
-static RESIDUAL_TABLE: Table<44> = Table::new(&RESIDUAL, 0, 0);
 
 /// The residual part is a polynomial in `b = tau - 0.5`, zero at 1080 K. Held off zero by a millionth of a rounding
 /// error of tau's own, so that the logarithmic derivatives can be divided by it.
@@ -32,8 +30,8 @@ pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
     let tau = REDUCING_TEMPERATURE / temperature;
     let b = residual_argument(tau);
     let tau_per_b = tau / b;
-    let ideal = IDEAL_TABLE.sums(&[1.0], &powers::<IDEAL_COUNT, IDEAL_ZERO>(tau));
-    let residual = RESIDUAL_TABLE.sums(&powers::<I_COUNT, 0>(pi), &powers::<J_COUNT, 0>(b));
+    let ideal = sums::<Equation16, 1, 0, IDEAL_COUNT, IDEAL_ZERO>(&Powers::new(1.0), &Powers::new(tau));
+    let residual = sums::<Equation17, I_COUNT, 0, J_COUNT, 0>(&Powers::new(pi), &Powers::new(b));
     Gibbs {
         value: pi.ln() + ideal.value + residual.value,
         pi: 1.0 + residual.a,
@@ -51,8 +49,8 @@ pub(super) fn enthalpy(pressure: f64, temperature: f64) -> Partial {
     let tau = REDUCING_TEMPERATURE / temperature;
     let b = residual_argument(tau);
     let tau_per_b = tau / b;
-    let ideal = IDEAL_TABLE.sums_by_b(&[1.0], &powers::<IDEAL_COUNT, IDEAL_ZERO>(tau));
-    let residual = RESIDUAL_TABLE.sums_by_b(&powers::<I_COUNT, 0>(pi), &powers::<J_COUNT, 0>(b));
+    let ideal = sums::<Equation16, 1, 0, IDEAL_COUNT, IDEAL_ZERO>(&Powers::new(1.0), &Powers::new(tau));
+    let residual = sums::<Equation17, I_COUNT, 0, J_COUNT, 0>(&Powers::new(pi), &Powers::new(b));
     GibbsByTau {
         tau: ideal.b + tau_per_b * residual.b,
         pi_tau: tau_per_b * residual.ab,

@@ -1,8 +1,8 @@
 //! Region 3, around the critical point: equation (28) of IAPWS R7-97(2012), the Helmholtz free energy over density
 //! and temperature, with the density found for a pressure.
 
-use super::polynomial::{Table, powers};
-use super::region3_table::HELMHOLTZ;
+use super::polynomial::{Powers, contract, sums};
+use super::region3_table::Equation28;
 use super::{CRITICAL_DENSITY, CRITICAL_TEMPERATURE, GAS_CONSTANT, Partial, Phase, Properties, WaterError};
 
 /// Coefficient of the logarithm of the density, the first of table 30 of IAPWS R7-97(2012).
@@ -11,7 +11,6 @@ const LOGARITHM: f64 = 0.10658070028513e1;
 /// Exponents I reach from 0 to 11, J from 0 to 26.
 const I_COUNT: usize = 12;
 const J_COUNT: usize = 27;
-static TABLE: Table<40> = Table::new(&HELMHOLTZ, 0, 0);
 
 /// One quantity by density and temperature.
 #[derive(Clone, Copy)]
@@ -33,7 +32,7 @@ pub(super) struct ByDensity {
 pub(super) fn by_density(density: f64, temperature: f64) -> ByDensity {
     let delta = density / CRITICAL_DENSITY;
     let tau = CRITICAL_TEMPERATURE / temperature;
-    let sums = TABLE.sums(&powers::<I_COUNT, 0>(delta), &powers::<J_COUNT, 0>(tau));
+    let sums = sums::<Equation28, I_COUNT, 0, J_COUNT, 0>(&Powers::new(delta), &Powers::new(tau));
     let value = LOGARITHM * delta.ln() + sums.value;
     let by_delta = LOGARITHM + sums.a;
     let by_delta_twice = sums.aa - LOGARITHM;
@@ -98,8 +97,8 @@ struct Isotherm {
 
 impl Isotherm {
     fn new(temperature: f64) -> Self {
-        let mut coefficients =
-            TABLE.contract::<I_COUNT, J_COUNT>(&powers::<J_COUNT, 0>(CRITICAL_TEMPERATURE / temperature));
+        let tau = CRITICAL_TEMPERATURE / temperature;
+        let mut coefficients = contract::<Equation28, I_COUNT, J_COUNT, 0>(&Powers::new(tau));
         for (i, coefficient) in coefficients.iter_mut().enumerate() {
             *coefficient *= i as f64;
         }

@@ -1,8 +1,8 @@
 //! Region 5, hot steam: equations (32) to (34) of IAPWS R7-97(2012), the Gibbs free energy over (p,T).
 
 use super::gibbs::{Gibbs, GibbsByTau};
-use super::polynomial::{Table, powers};
-use super::region5_table::{IDEAL, RESIDUAL};
+use super::polynomial::{Powers, sums};
+use super::region5_table::{Equation33, Equation34};
 use super::{Partial, Properties};
 
 const REDUCING_PRESSURE: f64 = 1e6;
@@ -12,15 +12,13 @@ const REDUCING_TEMPERATURE: f64 = 1000.0;
 const I_COUNT: usize = 4;
 const J_COUNT: usize = 13;
 const J_ZERO: usize = 3;
-static IDEAL_TABLE: Table<8> = Table::new(&IDEAL, 0, J_ZERO);
-static RESIDUAL_TABLE: Table<8> = Table::new(&RESIDUAL, 0, J_ZERO);
 
 #[inline]
 pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
     let pi = pressure / REDUCING_PRESSURE;
-    let powers_of_tau = powers::<J_COUNT, J_ZERO>(REDUCING_TEMPERATURE / temperature);
-    let ideal = IDEAL_TABLE.sums(&[1.0], &powers_of_tau);
-    let residual = RESIDUAL_TABLE.sums(&powers::<I_COUNT, 0>(pi), &powers_of_tau);
+    let powers_of_tau = Powers::<J_COUNT, J_ZERO>::new(REDUCING_TEMPERATURE / temperature);
+    let ideal = sums::<Equation33, 1, 0, J_COUNT, J_ZERO>(&Powers::new(1.0), &powers_of_tau);
+    let residual = sums::<Equation34, I_COUNT, 0, J_COUNT, J_ZERO>(&Powers::new(pi), &powers_of_tau);
     Gibbs {
         value: pi.ln() + ideal.value + residual.value,
         pi: 1.0 + residual.a,
@@ -35,9 +33,9 @@ pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
 #[inline]
 pub(super) fn enthalpy(pressure: f64, temperature: f64) -> Partial {
     let pi = pressure / REDUCING_PRESSURE;
-    let powers_of_tau = powers::<J_COUNT, J_ZERO>(REDUCING_TEMPERATURE / temperature);
-    let ideal = IDEAL_TABLE.sums_by_b(&[1.0], &powers_of_tau);
-    let residual = RESIDUAL_TABLE.sums_by_b(&powers::<I_COUNT, 0>(pi), &powers_of_tau);
+    let powers_of_tau = Powers::<J_COUNT, J_ZERO>::new(REDUCING_TEMPERATURE / temperature);
+    let ideal = sums::<Equation33, 1, 0, J_COUNT, J_ZERO>(&Powers::new(1.0), &powers_of_tau);
+    let residual = sums::<Equation34, I_COUNT, 0, J_COUNT, J_ZERO>(&Powers::new(pi), &powers_of_tau);
     GibbsByTau { tau: ideal.b + residual.b, pi_tau: residual.ab, tau_tau: ideal.bb + residual.bb }
         .enthalpy(pressure, temperature)
 }

@@ -1,0 +1,156 @@
+//! What a row of the problem is: a residual over a few local variables, written once over a [`Scalar`] and
+//! differentiated exactly by local dual numbers.
+
+mod balance;
+mod fluid;
+mod law;
+
+pub use balance::{EnergyBalance, GRAVITY, Linear, StreamTerm};
+pub use fluid::{AtSaturation, EntropyOf, Form, Held, Makes, PropertyRow, QualityOf, SaturationOf, StagnationPressure, StagnationTemperature, StreamFluid, VolumeOf, saturation_temperature};
+pub use law::{Difference, Product, Quotient};
+
+use meterwright_thermo::liquid::LiquidError;
+use meterwright_thermo::water::WaterError;
+use meterwright_thermo::{Dual, Scalar};
+
+/// Why a residual has no value at a state.
+#[derive(Clone, Debug, PartialEq, thiserror::Error)]
+pub enum EquationError {
+    /// A property formula was asked outside its range.
+    #[error(transparent)]
+    Property(#[from] WaterError),
+    /// A liquid's formula was asked outside its range.
+    #[error(transparent)]
+    Liquid(#[from] LiquidError),
+    /// The law has no value here, for instance a logarithmic mean of differences of opposite sign.
+    #[error("{0}")]
+    Undefined(&'static str),
+    /// A user's formula has no value here.
+    #[error("{0}")]
+    Formula(String),
+}
+
+/// An equation `residual = 0` over a few variables. Implement this; the rest of the engine sees [`Row`].
+pub trait Equation: Send + Sync {
+    /// The residual at the local variables `x`, with the fluid formulas that are `held` during a solve.
+    ///
+    /// # Errors
+    /// [`EquationError`] where the equation has no value.
+    fn residual<S: Scalar>(&self, x: &[S], held: Held<'_>) -> Result<S, EquationError>;
+}
+
+/// The object-safe face of an [`Equation`].
+trait Differentiable: Send + Sync {
+    fn value(&self, x: &[f64], held: Held<'_>) -> Result<f64, EquationError>;
+    fn linearise(&self, x: &[f64], held: Held<'_>, gradient: &mut [f64]) -> Result<f64, EquationError>;
+}
+
+impl<E: Equation> Differentiable for E {
+    fn value(&self, x: &[f64], held: Held<'_>) -> Result<f64, EquationError> {
+        self.residual(x, held)
+    }
+
+    fn linearise(&self, x: &[f64], held: Held<'_>, gradient: &mut [f64]) -> Result<f64, EquationError> {
+        match x.len() {
+            0..=4 => stride::<E, 4>(self, x, held, 0, gradient),
+            5..=6 => stride::<E, 6>(self, x, held, 0, gradient),
+            7..=8 => stride::<E, 8>(self, x, held, 0, gradient),
+            length => {
+                let mut value = 0.0;
+                for start in (0..length).step_by(8) {
+                    value = stride::<E, 8>(self, x, held, start, gradient)?;
+                }
+                Ok(value)
+            }
+        }
+    }
+}
+
+/// Local variables that fit on the stack; wider equations take a heap buffer.
+const INLINE: usize = 12;
+
+/// Derivatives by the `N` local variables from `start` on.
+fn stride<E: Equation, const N: usize>(
+    equation: &E,
+    x: &[f64],
+    held: Held<'_>,
+    start: usize,
+    gradient: &mut [f64],
+) -> Result<f64, EquationError> {
+    let seed = |(index, value): (usize, &f64)| Dual::<N>::variable(*value, index.wrapping_sub(start));
+    let residual = if x.len() <= INLINE {
+        let mut seeded = [Dual::<N>::constant(0.0); INLINE];
+        for (slot, local) in seeded.iter_mut().zip(x.iter().enumerate()) {
+            *slot = seed(local);
+        }
+        equation.residual(&seeded[..x.len()], held)?
+    } else {
+        let seeded: Vec<Dual<N>> = x.iter().enumerate().map(seed).collect();
+        equation.residual(&seeded, held)?
+    };
+    for (slot, slope) in gradient.iter_mut().skip(start).zip(residual.gradient) {
+        *slot = slope;
+    }
+    Ok(residual.re)
+}
+
+/// What part a row has in the problem.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum RowRole {
+    /// A balance, property or law that constrains the state.
+    Law,
+    /// It only defines the value of its first variable, which nothing reads or gives. Where it has no value, that
+    /// variable can't be known and nothing else is touched.
+    Definition,
+}
+
+/// One row of the problem.
+pub struct Row {
+    name: String,
+    role: RowRole,
+    variables: Vec<u32>,
+    equation: Box<dyn Differentiable>,
+}
+
+impl Row {
+    /// A row from its equation and the problem's variables that stand for the equation's local ones.
+    pub fn new(name: String, role: RowRole, variables: Vec<u32>, equation: impl Equation + 'static) -> Self {
+        Self { name, role, variables, equation: Box::new(equation) }
+    }
+
+    /// What it is called in messages, such as `hp_turbine: energy balance`.
+    pub fn name(&self) -> &str {
+        &self.name
+    }
+
+    /// Its part in the problem.
+    pub fn role(&self) -> RowRole {
+        self.role
+    }
+
+    /// Makes a definition a law, or a law a definition.
+    pub(crate) fn set_role(&mut self, role: RowRole) {
+        self.role = role;
+    }
+
+    /// The problem's variables that stand for the equation's local ones, in their order.
+    pub fn variables(&self) -> &[u32] {
+        &self.variables
+    }
+
+    /// Residual at the local variables `x`.
+    ///
+    /// # Errors
+    /// [`EquationError`] where the equation has no value.
+    pub fn value(&self, x: &[f64], held: Held<'_>) -> Result<f64, EquationError> {
+        self.equation.value(x, held)
+    }
+
+    /// Residual at the local variables `x`, and its derivatives by them.
+    ///
+    /// # Errors
+    /// [`EquationError`] where the equation has no value.
+    pub fn linearise(&self, x: &[f64], held: Held<'_>, gradient: &mut [f64]) -> Result<f64, EquationError> {
+        self.equation.linearise(x, held, gradient)
+    }
+}

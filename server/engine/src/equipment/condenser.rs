@@ -1,0 +1,99 @@
+//! Condenser: turns exhaust steam into condensate.
+//!
+//! Ports: `hot_inlet`, `hot_outlet`, `cold_inlet`, `cold_outlet`, `drain_inlet.*` (drains, make-up, bypass steam),
+//! `vent`. Quantities: those of a heat exchanger, `terminal_difference`, and `cleanliness` where the setting
+//! `design_ua` is stated. Equations: mass and energy of each side. In `log_mean_difference`, `effectiveness` and `ua`
+//! the steam has its saturation temperature at the hot inlet's pressure throughout, as is common practice. The
+//! condensate need not be saturated; its temperature is free.
+
+use super::exchanger::{self, HotSide};
+use super::{Flow, Guess, Kind, Machine, Port, QuantityRule, SettingRule, System, Takes, VariableRole};
+use crate::equation::Linear;
+use crate::plant::PhaseHint;
+use crate::quantity::Dimension;
+
+/// See the module.
+pub(super) struct Condenser;
+
+/// Terminal difference of a condenser nobody knows anything about, K.
+const TERMINAL_DIFFERENCE: f64 = 4.0;
+
+impl Kind for Condenser {
+    fn name(&self) -> &'static str {
+        "condenser"
+    }
+
+    fn about(&self) -> &'static str {
+        "condenses steam against a cold stream"
+    }
+
+    fn ports(&self) -> &'static [Port] {
+        const PORTS: &[Port] = &[
+            exchanger::HOT_INLET.likely(PhaseHint::Mixture),
+            exchanger::HOT_OUTLET.likely(PhaseHint::Liquid),
+            exchanger::COLD_INLET,
+            exchanger::COLD_OUTLET,
+            Port::many("drain_inlet", Flow::In).optional().likely(PhaseHint::Liquid),
+            Port::one("vent", Flow::Out).optional().likely(PhaseHint::Vapour),
+        ];
+        PORTS
+    }
+
+    fn quantities(&self) -> &'static [QuantityRule] {
+        const QUANTITIES: &[QuantityRule] = &[
+            exchanger::DUTY,
+            exchanger::UA,
+            exchanger::EFFECTIVENESS,
+            exchanger::LOG_MEAN_DIFFERENCE,
+            exchanger::HOT_PRESSURE_DROP,
+            exchanger::COLD_PRESSURE_DROP,
+            exchanger::TERMINAL_DIFFERENCE,
+            QuantityRule::new("cleanliness", Dimension::RATIO, "ua over the setting design_ua"),
+        ];
+        QUANTITIES
+    }
+
+    fn settings(&self) -> &'static [SettingRule] {
+        const SETTINGS: &[SettingRule] = &[SettingRule {
+            key: "design_ua",
+            takes: Takes::Amount(Dimension::THERMAL_CONDUCTANCE),
+            about: "ua of the clean condenser at this load, for its cleanliness",
+        }];
+        SETTINGS
+    }
+
+    fn sides(&self) -> &'static [&'static str] {
+        exchanger::SIDES
+    }
+
+    fn build(&self, machine: &Machine, system: &mut System) {
+        exchanger::build(machine, system);
+    }
+
+    fn derive(&self, machine: &Machine, quantity: &str, system: &mut System) -> Option<u32> {
+        match quantity {
+            "terminal_difference" => exchanger::terminal_difference(machine, system),
+            "cleanliness" => {
+                let design = machine.amount("design_ua")?;
+                let of = [exchanger::derive(machine, "ua", HotSide::Condensing, system)?];
+                let law = Linear::new(vec![design, -1.0]);
+                Some(system.define(machine, quantity, Dimension::RATIO, VariableRole::Ratio, &of, law))
+            }
+            _ => exchanger::derive(machine, quantity, HotSide::Condensing, system),
+        }
+    }
+
+    fn guess(&self, machine: &Machine, guess: &mut Guess<'_>) {
+        guess.level_pressures_at(machine, &["hot_inlet", "hot_outlet", "vent"]);
+        guess.level_pressures_at(machine, &["cold_inlet", "cold_outlet"]);
+        let streams = ["hot_inlet", "hot_outlet", "cold_outlet"].map(|port| machine.stream(port));
+        if let [Some(steam), Some(condensate), Some(cold)] = streams {
+            guess.condense(steam, cold, TERMINAL_DIFFERENCE);
+            guess.at_saturation(steam);
+            guess.at_saturation(condensate);
+        }
+        if guess.desperate {
+            guess.even_out(machine);
+        }
+    }
+}

@@ -1,0 +1,82 @@
+//! Pump: raises the pressure of a liquid.
+//!
+//! Ports: `inlet`, `outlet`, `extraction.*` (from an intermediate stage). Quantities: `power` (shaft, taken),
+//! `efficiency`, `pressure_rise`, `pressure_ratio`. Equations: mass and energy.
+
+use super::isentropic::Compression;
+use super::{Flow, Guess, Kind, Machine, Port, QuantityRule, ShaftRole, System, VariableRole};
+use crate::equation::Quotient;
+use crate::plant::PhaseHint;
+use crate::quantity::Dimension;
+
+/// See the module.
+pub(super) struct Pump;
+
+impl Kind for Pump {
+    fn name(&self) -> &'static str {
+        "pump"
+    }
+
+    fn about(&self) -> &'static str {
+        "raises the pressure of a liquid"
+    }
+
+    fn ports(&self) -> &'static [Port] {
+        const PORTS: &[Port] = &[
+            Port::one("inlet", Flow::In).likely(PhaseHint::Liquid),
+            Port::one("outlet", Flow::Out).likely(PhaseHint::Liquid),
+            Port::many("extraction", Flow::Out).optional().likely(PhaseHint::Liquid),
+        ];
+        PORTS
+    }
+
+    fn quantities(&self) -> &'static [QuantityRule] {
+        const QUANTITIES: &[QuantityRule] = &[
+            QuantityRule::new("power", Dimension::POWER, "shaft power taken"),
+            QuantityRule::new(
+                "efficiency",
+                Dimension::RATIO,
+                "isentropic enthalpy rise to the outlet pressure over the actual rise",
+            ),
+            QuantityRule::new("pressure_rise", Dimension::PRESSURE, "outlet pressure less inlet pressure"),
+            QuantityRule::new("pressure_ratio", Dimension::RATIO, "outlet pressure over inlet pressure"),
+        ];
+        QUANTITIES
+    }
+
+    fn shaft_role(&self) -> ShaftRole {
+        ShaftRole::Takes
+    }
+
+    fn build(&self, machine: &Machine, system: &mut System) {
+        system.mass_balances(machine);
+        system.energy_balance(machine, 0, &[("power", 1.0)]);
+    }
+
+    fn derive(&self, machine: &Machine, quantity: &str, system: &mut System) -> Option<u32> {
+        let (inlet, outlet) = (machine.stream("inlet")?, machine.stream("outlet")?);
+        match quantity {
+            "power" => Some(system.power(machine, quantity)),
+            "efficiency" => {
+                let (law, of) = Compression::between(inlet, outlet, system);
+                Some(system.define(machine, quantity, Dimension::RATIO, VariableRole::Ratio, &of, law))
+            }
+            "pressure_rise" => {
+                let (p_out, p_in) = (system.pressure(outlet), system.pressure(inlet));
+                Some(system.define_difference(machine, quantity, Dimension::PRESSURE, p_out, p_in))
+            }
+            "pressure_ratio" => {
+                let of = [system.pressure(outlet), system.pressure(inlet)];
+                Some(system.define(machine, quantity, Dimension::RATIO, VariableRole::Other, &of, Quotient))
+            }
+            _ => None,
+        }
+    }
+
+    fn guess(&self, machine: &Machine, guess: &mut Guess<'_>) {
+        guess.even_out_temperatures(machine);
+        if guess.desperate {
+            guess.even_out_pressures(machine);
+        }
+    }
+}

@@ -1,0 +1,58 @@
+//! What throttles without doing work: shared by `valve` and `pipe`.
+
+use meterwright_thermo::Scalar;
+
+use super::{Flow, Machine, Port, QuantityRule, System, VariableRole};
+use crate::equation::{Equation, EquationError, Held, StreamFluid};
+use crate::quantity::Dimension;
+
+pub(super) const PORTS: &[Port] = &[Port::one("inlet", Flow::In), Port::one("outlet", Flow::Out)];
+
+pub(super) const QUANTITIES: &[QuantityRule] = &[
+    QuantityRule::new("pressure_drop", Dimension::PRESSURE, "inlet pressure less outlet pressure"),
+    QuantityRule::new(
+        "loss_coefficient",
+        Dimension::RATIO,
+        "pressure drop over the dynamic pressure in the inlet's area, which must be stated",
+    ),
+];
+
+/// Mass and energy.
+pub(super) fn build(machine: &Machine, system: &mut System) {
+    system.mass_balances(machine);
+    system.energy_balance(machine, 0, &[]);
+}
+
+/// Pressure drop and loss coefficient.
+pub(super) fn derive(machine: &Machine, quantity: &str, system: &mut System) -> Option<u32> {
+    let (inlet, outlet) = (machine.stream("inlet")?, machine.stream("outlet")?);
+    match quantity {
+        "pressure_drop" => {
+            let (p_in, p_out) = (system.pressure(inlet), system.pressure(outlet));
+            Some(system.define_difference(machine, quantity, Dimension::PRESSURE, p_in, p_out))
+        }
+        "loss_coefficient" => {
+            let area = system.streams[inlet].area?;
+            let law = LossCoefficient { fluid: system.streams[inlet].fluid, area };
+            let [p, t, h] = system.state(inlet);
+            let of = [p, t, h, system.mass_flow(inlet), system.pressure(outlet)];
+            Some(system.define(machine, quantity, Dimension::RATIO, VariableRole::Other, &of, law))
+        }
+        _ => None,
+    }
+}
+
+/// Loss coefficient `zeta` of a fitting: `p1 - p2 = zeta rho1 w1^2 / 2` over (zeta, p1, T1, h1, m, p2), where
+/// `rho1 w1^2 = m^2 v1 / area^2` (Idelchik, Handbook of Hydraulic Resistance, chapter 1; from memory).
+struct LossCoefficient {
+    fluid: StreamFluid,
+    area: f64,
+}
+
+impl Equation for LossCoefficient {
+    fn residual<S: Scalar>(&self, x: &[S], held: Held<'_>) -> Result<S, EquationError> {
+        let flux = x[4] / self.area;
+        let dynamic_pressure = flux * flux * self.fluid.volume(held, x[1], x[2], x[3])? * 0.5;
+        Ok(x[0] * dynamic_pressure - (x[1] - x[5]))
+    }
+}

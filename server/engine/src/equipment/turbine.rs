@@ -1,0 +1,178 @@
+//! Turbine: expands steam and makes shaft power.
+//!
+//! Ports: `inlet`, `outlet`, `extraction.*`, `admission.*`. Quantities: `power` (shaft, made); isentropic `efficiency`
+//! and `flow_coefficient` (Stodola's cone law). With extractions or admissions there is one of each for every section,
+//! named after the port that the section ends at: `efficiency.extraction.a` (or `efficiency.a` where that is one port
+//! only), `efficiency.outlet`. Equations: mass and energy.
+//!
+//! Setting `sections`: the order of extractions and admissions along the expansion; that of the streams in the plant
+//! file where it is left out. The enthalpy with which the section before an admission ends is no stream's; it is free
+//! and takes part only where a quantity beside the admission is asked for.
+
+use super::expansion::{ConeLaw, ExpansionEfficiency, Section, Start};
+use super::{
+    Connection, Flow, Guess, Kind, Knowledge, Machine, Port, QuantityRule, SettingRule, ShaftRole, System,
+    Takes, VariableRole,
+};
+use crate::plant::PhaseHint;
+use crate::quantity::Dimension;
+
+/// See the module.
+pub(super) struct Turbine;
+
+impl Kind for Turbine {
+    fn name(&self) -> &'static str {
+        "turbine"
+    }
+
+    fn about(&self) -> &'static str {
+        "expands steam and makes shaft power"
+    }
+
+    fn ports(&self) -> &'static [Port] {
+        const PORTS: &[Port] = &[
+            Port::one("inlet", Flow::In).likely(PhaseHint::Vapour),
+            Port::one("outlet", Flow::Out).likely(PhaseHint::Mixture),
+            Port::many("extraction", Flow::Out).optional(),
+            Port::many("admission", Flow::In).optional(),
+        ];
+        PORTS
+    }
+
+    fn quantities(&self) -> &'static [QuantityRule] {
+        const EFFICIENCY: &str = "enthalpy drop over the isentropic one";
+        const FLOW_COEFFICIENT: &str = "mass flow over sqrt(p1 / v1 (1 - (p2 / p1)^2)), Stodola's cone law";
+        const QUANTITIES: &[QuantityRule] = &[
+            QuantityRule::new("power", Dimension::POWER, "shaft power made"),
+            QuantityRule::new("efficiency", Dimension::RATIO, EFFICIENCY),
+            QuantityRule::new("efficiency.PORT", Dimension::RATIO, EFFICIENCY),
+            QuantityRule::new("flow_coefficient", Dimension::AREA, FLOW_COEFFICIENT),
+            QuantityRule::new("flow_coefficient.PORT", Dimension::AREA, FLOW_COEFFICIENT),
+        ];
+        QUANTITIES
+    }
+
+    fn settings(&self) -> &'static [SettingRule] {
+        const SETTINGS: &[SettingRule] = &[SettingRule {
+            key: "sections",
+            takes: Takes::Ports,
+            about: "extractions and admissions in their order along the expansion",
+        }];
+        SETTINGS
+    }
+
+    fn shaft_role(&self) -> ShaftRole {
+        ShaftRole::Makes
+    }
+
+    fn build(&self, machine: &Machine, system: &mut System) {
+        system.mass_balances(machine);
+        system.energy_balance(machine, 0, &[("power", -1.0)]);
+    }
+
+    fn derive(&self, machine: &Machine, quantity: &str, system: &mut System) -> Option<u32> {
+        if quantity == "power" {
+            return Some(system.power(machine, quantity));
+        }
+        let order = order(machine)?;
+        let (law, port) = quantity.split_once('.').unwrap_or((quantity, ""));
+        let end = section_end(&order, port)?;
+        let name = if order.len() > 2 { format!("{law}.{}", order[end].name()) } else { law.to_owned() };
+        let p_end = system.pressure(order[end].stream);
+        match law {
+            "efficiency" => {
+                let (section, start) = section(machine, &order[..end], false, system);
+                let of = [vec![p_end, end_enthalpy(machine, order[end], system)], start].concat();
+                let (dimension, role) = (Dimension::RATIO, VariableRole::Ratio);
+                Some(system.define(machine, &name, dimension, role, &of, ExpansionEfficiency(section)))
+            }
+            "flow_coefficient" => {
+                let (section, start) = section(machine, &order[..end], true, system);
+                let of = [vec![p_end], start].concat();
+                let (dimension, role) = (Dimension::AREA, VariableRole::Other);
+                Some(system.define(machine, &name, dimension, role, &of, ConeLaw(section)))
+            }
+            _ => None,
+        }
+    }
+
+    fn guess(&self, machine: &Machine, guess: &mut Guess<'_>) {
+        if let Some(order) = order(machine) {
+            let streams: Vec<usize> = order.iter().map(|connection| connection.stream).collect();
+            guess.expand(&streams);
+        }
+        if guess.desperate {
+            guess.even_out_temperatures(machine);
+        }
+    }
+}
+
+/// The connections along the expansion.
+fn order(machine: &Machine) -> Option<Vec<&Connection>> {
+    let inlet = machine.streams("inlet").next()?;
+    let outlet = machine.streams("outlet").next()?;
+    let mut between: Vec<&Connection> =
+        machine.connections.iter().filter(|connection| connection.port.many).collect();
+    if let Some(sections) = machine.words("sections") {
+        let place = |connection: &Connection| sections.iter().position(|name| *name == connection.suffix);
+        between.sort_by_key(|connection| place(connection).unwrap_or(usize::MAX));
+    }
+    Some([vec![inlet], between, vec![outlet]].concat())
+}
+
+/// Place of the port at which the named section ends; a turbine with a single section has it without a name.
+fn section_end(order: &[&Connection], port: &str) -> Option<usize> {
+    let ends = &order[1..];
+    if port.is_empty() {
+        return (ends.len() == 1).then_some(1);
+    }
+    if let Some(place) = ends.iter().position(|end| end.name() == port) {
+        return Some(place + 1);
+    }
+    let mut named = ends.iter().enumerate().filter(|(_, end)| end.suffix == port);
+    let (place, _) = named.next()?;
+    named.next().is_none().then_some(place + 1)
+}
+
+/// The section that starts at the last of these connections, and its local variables. Without an admission at its
+/// start its mass flow is needed by the cone law only.
+fn section(
+    machine: &Machine,
+    upstream: &[&Connection],
+    with_mass_flow: bool,
+    system: &mut System,
+) -> (Section, Vec<u32>) {
+    let start = upstream[upstream.len() - 1];
+    let admitted = is_admission(start);
+    let mut variables = if admitted {
+        let before = end_enthalpy(machine, start, system);
+        vec![system.pressure(start.stream), before, system.enthalpy(start.stream)]
+    } else {
+        system.state(start.stream).to_vec()
+    };
+    let mut signs = Vec::new();
+    if admitted || with_mass_flow {
+        for connection in upstream {
+            variables.push(system.mass_flow(connection.stream));
+            signs.push(if connection.port.flow == Flow::In { 1.0 } else { -1.0 });
+        }
+    }
+    let start_kind = if admitted { Start::Mix } else { Start::Stream };
+    (Section { fluid: system.streams[start.stream].fluid, start: start_kind, signs }, variables)
+}
+
+/// Enthalpy with which the section that ends at this port ends: that of the stream, or before an admission a free one.
+fn end_enthalpy(machine: &Machine, end: &Connection, system: &mut System) -> u32 {
+    if !is_admission(end) {
+        return system.enthalpy(end.stream);
+    }
+    let name = format!("enthalpy_before.{}", end.name());
+    let (dimension, role) = (Dimension::SPECIFIC_ENERGY, VariableRole::Enthalpy);
+    let id = system.quantity(machine, &name, dimension, role, Knowledge::Free);
+    system.variables[id as usize].listed = false;
+    id
+}
+
+fn is_admission(connection: &Connection) -> bool {
+    connection.port.name == "admission"
+}

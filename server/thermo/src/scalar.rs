@@ -183,6 +183,7 @@ impl<const N: usize> Sub for Dual<N> {
 impl<const N: usize> Mul for Dual<N> {
     type Output = Self;
     #[inline]
+    #[expect(clippy::suspicious_arithmetic_impl, reason = "the product rule adds")]
     fn mul(self, other: Self) -> Self {
         self.zip(other, self.re * other.re, |a, b| a * other.re + b * self.re)
     }

@@ -7,10 +7,13 @@ use super::polynomial::{Powers, sum};
 
 /// Pressure up to which subregion 2a reaches, Pa.
 const HIGHEST_PRESSURE_A: f64 = 4e6;
+/// Reducing entropy of equation (26), kJ/(kg K).
+#[expect(clippy::approx_constant, reason = "the release prints these digits; they are no part of pi")]
+const REDUCING_ENTROPY_B: f64 = 0.7853;
 /// Entropy between subregions 2b and 2c, J/(kg K).
 const ENTROPY_BC: f64 = 5.85e3;
 
-/// Equation (21): enthalpy (J/kg) between subregions 2b and 2c at a pressure (Pa). The boundary begins at 6.5467 MPa on
+/// Equation (21): enthalpy (J/kg) between subregions 2b and 2c at a pressure (Pa). The boundary begins at 6.5467 megapascal on
 /// the saturation line, with the coefficients of table 19; below that all is 2b.
 fn enthalpy_bc(pressure: f64) -> f64 {
     const N: [f64; 3] = [0.12809002730136e-3, 0.26526571908428e4, 0.45257578905948e1];
@@ -41,7 +44,10 @@ pub(super) fn temperature_ps(pressure: f64, entropy: f64) -> f64 {
             &Powers::<46, 27>::new(sigma / 2.0 - 2.0),
         )
     } else if entropy >= ENTROPY_BC {
-        sum::<TemperaturePsB, 12, 6, _, _>(&Powers::new(pi), &Powers::<13, 0>::new(10.0 - sigma / 0.7853))
+        sum::<TemperaturePsB, 12, 6, _, _>(
+            &Powers::new(pi),
+            &Powers::<13, 0>::new(10.0 - sigma / REDUCING_ENTROPY_B),
+        )
     } else {
         sum::<TemperaturePsC, 10, 2, _, _>(&Powers::new(pi), &Powers::<6, 0>::new(2.0 - sigma / 2.9251))
     }

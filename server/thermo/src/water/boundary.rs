@@ -10,7 +10,7 @@ pub(super) fn pressure(temperature: f64) -> f64 {
     (N[0] + temperature * (N[1] + temperature * N[2])) * 1e6
 }
 
-/// Temperature of the boundary at a pressure, K from Pa. Meant for 16.5292 MPa to 100 MPa.
+/// Temperature of the boundary at a pressure, K from Pa. Meant for 16.5292 megapascal to 100 megapascal.
 #[inline]
 pub(super) fn temperature(pressure: f64) -> f64 {
     N[3] + ((pressure / 1e6 - N[4]) / N[2]).sqrt()
@@ -18,7 +18,7 @@ pub(super) fn temperature(pressure: f64) -> f64 {
 
 #[cfg(test)]
 mod tests {
-    /// Section 4 of IAPWS R7-97(2012): the point 623.15 K, 16.5291643 MPa fulfils both equations.
+    /// Section 4 of IAPWS R7-97(2012): the point 623.15 K, 16.5291643 megapascal fulfils both equations.
     #[test]
     fn the_printed_point_lies_on_the_boundary() {
         assert!((super::pressure(623.15) - 0.165291643e8).abs() < 0.5e0);

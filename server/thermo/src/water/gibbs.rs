@@ -23,8 +23,8 @@ pub(super) struct GibbsByTau {
 }
 
 impl Gibbs {
-    /// Tables 3, 12 of IAPWS R7-97(2012): v = R T/p (pi gamma_pi), h = R T (tau gamma_tau),
-    /// s = R (tau gamma_tau - gamma), each differentiated once more.
+    /// Tables 3 and 12 of IAPWS R7-97(2012): `v = R T/p (pi gamma_pi)`, `h = R T (tau gamma_tau)`,
+    /// `s = R (tau gamma_tau - gamma)`, each differentiated once more.
     #[inline]
     pub(super) fn properties(self, pressure: f64, temperature: f64) -> Properties {
         let r = GAS_CONSTANT;

@@ -219,8 +219,7 @@ const MOST_STEPS: usize = 30;
 /// Looks in region 3 and in the two-phase states below it.
 fn dense<C: Coordinate>(pressure: f64, value: f64) -> Result<Location, WaterError> {
     if pressure < CRITICAL_PRESSURE {
-        let liquid = saturation::liquid(pressure)?;
-        let vapour = saturation::vapour(pressure)?;
+        let (liquid, vapour) = saturation::both(pressure)?;
         if (C::of_saturated(&liquid).value..=C::of_saturated(&vapour).value).contains(&value) {
             return Ok(Location::Mixture {
                 temperature: liquid.temperature.value,

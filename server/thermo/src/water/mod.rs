@@ -48,7 +48,7 @@ pub const LOWEST_TEMPERATURE: f64 = 273.15;
 pub const LOWEST_PRESSURE: f64 = 611.212677;
 /// Highest pressure of the formulation, Pa.
 pub const HIGHEST_PRESSURE: f64 = 100e6;
-/// Highest temperature of the formulation up to 50 MPa, K.
+/// Highest temperature of the formulation up to 50 megapascal, K.
 pub const HIGHEST_TEMPERATURE: f64 = 2273.15;
 
 const REGION_1_HIGHEST_TEMPERATURE: f64 = 623.15;

@@ -29,7 +29,7 @@ impl fmt::Display for Phase {
 }
 
 /// The equation of IAPWS-IF97 that is held. Region 3, whose equation has a liquid and a vapour root of the density
-/// below the critical temperature, comes in two; from the critical temperature on they coincide.
+/// below the critical point, comes in two; at and above the critical pressure they coincide.
 #[derive(Clone, Copy, Debug, PartialEq, Eq, Hash)]
 pub enum Region {
     /// Liquid up to 623.15 K.
@@ -40,7 +40,7 @@ pub enum Region {
     ThreeLiquid,
     /// Around the critical point, the thin root.
     ThreeVapour,
-    /// Steam from 1073.15 K to 2273.15 K, up to 50 MPa.
+    /// Steam from 1073.15 K to 2273.15 K, up to 50 megapascal.
     Five,
 }
 
@@ -48,8 +48,8 @@ impl Region {
     /// The region of a state by figure 2 of IAPWS R7-97(2012); on the saturation line the liquid's.
     ///
     /// # Errors
-    /// A pressure outside 611.213 Pa to 100 MPa, a temperature outside 273.15 K to 2273.15 K, or one above 1073.15 K
-    /// with a pressure above 50 MPa.
+    /// A pressure outside 611.213 Pa to 100 megapascal, a temperature outside 273.15 K to 2273.15 K, or one above 1073.15 K
+    /// with a pressure above 50 megapascal.
     pub fn at(pressure: f64, temperature: f64) -> Result<Self, WaterError> {
         check_pressure(pressure, LOWEST_PRESSURE, HIGHEST_PRESSURE)?;
         check_temperature(temperature, LOWEST_TEMPERATURE, highest_temperature(pressure))?;
@@ -83,7 +83,7 @@ impl Region {
     /// # Errors
     /// As [`Region::at`].
     pub fn of_phase(phase: Phase, pressure: f64, temperature: f64) -> Result<Self, WaterError> {
-        if pressure >= CRITICAL_PRESSURE || temperature >= CRITICAL_TEMPERATURE {
+        if pressure >= CRITICAL_PRESSURE || temperature > BOUNDARY_23_HIGHEST_TEMPERATURE {
             return Self::at(pressure, temperature);
         }
         check_pressure(pressure, LOWEST_PRESSURE, HIGHEST_PRESSURE)?;
@@ -163,7 +163,7 @@ impl Region {
     #[inline]
     pub(super) const fn continued_temperatures(self) -> (f64, f64) {
         match self {
-            Self::One => (250.0, 680.0),
+            Self::One => (250.0, 640.0),
             Self::Two => (250.0, 1150.0),
             Self::ThreeLiquid | Self::ThreeVapour => (600.0, 900.0),
             Self::Five => (1000.0, 2400.0),

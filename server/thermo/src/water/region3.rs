@@ -3,7 +3,10 @@
 
 use super::polynomial::{Powers, contract, sums};
 use super::region3_table::Equation28;
-use super::{CRITICAL_DENSITY, CRITICAL_TEMPERATURE, GAS_CONSTANT, Partial, Phase, Properties, WaterError};
+use super::{
+    CRITICAL_DENSITY, CRITICAL_PRESSURE, CRITICAL_TEMPERATURE, GAS_CONSTANT, Partial, Phase, Properties,
+    WaterError,
+};
 
 /// Coefficient of the logarithm of the density, the first of table 30 of IAPWS R7-97(2012).
 const LOGARITHM: f64 = 0.10658070028513e1;
@@ -120,13 +123,20 @@ impl Isotherm {
 
 /// The density of a phase at pressure and temperature, kg/m3.
 ///
-/// Newton's method from outside: below the critical temperature a liquid's isotherm is convex in the density and a
+/// Newton's method from outside: below the critical point a liquid's isotherm is convex in the density and a
 /// vapour's concave, so that steps from the dense or the thin end come monotonically to the root, and leave the
-/// phase's half if there is none. At and above the critical temperature the one root is kept between bounds.
-pub(super) fn density(phase: Phase, pressure: f64, temperature: f64) -> Result<f64, WaterError> {
+/// phase's half if there is none. At or above the critical temperature or pressure there is one root, whatever the
+/// phase is called; only a liquid at or above the critical temperature and below the critical pressure is refused,
+/// as that is plainly vapour.
+fn density(phase: Phase, pressure: f64, temperature: f64) -> Result<f64, WaterError> {
+    let unstable = Err(WaterError::Unstable { phase, pressure, temperature });
+    let hot = temperature >= CRITICAL_TEMPERATURE;
+    let single = hot || pressure >= CRITICAL_PRESSURE;
+    if hot && pressure < CRITICAL_PRESSURE && phase == Phase::Liquid {
+        return unstable;
+    }
     let isotherm = Isotherm::new(temperature);
-    let supercritical = temperature >= CRITICAL_TEMPERATURE;
-    let dense = if supercritical { pressure > isotherm.pressure(1.0).0 } else { phase == Phase::Liquid };
+    let dense = if single { pressure > isotherm.pressure(1.0).0 } else { phase == Phase::Liquid };
     let (mut low, mut high) = if dense { (1.0, DENSEST) } else { (0.0, 1.0) };
     let mut delta = if dense { DENSEST } else { pressure / isotherm.scale };
     for _ in 0..MOST_STEPS {
@@ -142,8 +152,8 @@ pub(super) fn density(phase: Phase, pressure: f64, temperature: f64) -> Result<f
             low = delta;
         }
         let inside = slope > 0.0 && low < next && next < high;
-        if !inside && !supercritical {
-            return Err(WaterError::Unstable { phase, pressure, temperature });
+        if !inside && !single {
+            return unstable;
         }
         delta = if inside { next } else { 0.5 * (low + high) };
     }
@@ -164,7 +174,7 @@ mod tests {
     use super::by_density;
     use crate::water::test_support::same_digits;
 
-    /// Table 33 of IAPWS R7-97(2012): T/K, density -> p/MPa, h, u, s, cp, w.
+    /// Table 33 of IAPWS R7-97(2012): T/K, density -> p/megapascal, h, u, s, cp, w.
     #[test]
     fn table_33() {
         for (temperature, density, printed) in [

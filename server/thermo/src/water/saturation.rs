@@ -77,7 +77,7 @@ pub fn pressure(temperature: f64) -> Result<(f64, f64), WaterError> {
 /// Saturation temperature (K) at a pressure (Pa), and its derivative by pressure: equation (31).
 ///
 /// # Errors
-/// A pressure outside 611.213 Pa to 22.064 MPa.
+/// A pressure outside 611.213 Pa to 22.064 megapascal.
 #[inline]
 pub fn temperature(pressure: f64) -> Result<(f64, f64), WaterError> {
     check_pressure(pressure, LOWEST_PRESSURE, CRITICAL_PRESSURE)?;
@@ -95,38 +95,72 @@ pub fn temperature(pressure: f64) -> Result<(f64, f64), WaterError> {
 /// Saturated liquid at a pressure (Pa).
 ///
 /// # Errors
-/// A pressure outside 611.213 Pa to 22.064 MPa.
+/// A pressure outside 611.213 Pa to 22.064 megapascal.
 pub fn liquid(pressure: f64) -> Result<Saturated, WaterError> {
-    saturated(Phase::Liquid, pressure)
+    Tangent::at(pressure)?.saturated(Phase::Liquid)
 }
 
 /// Saturated vapour at a pressure (Pa).
 ///
 /// # Errors
-/// A pressure outside 611.213 Pa to 22.064 MPa.
+/// A pressure outside 611.213 Pa to 22.064 megapascal.
 pub fn vapour(pressure: f64) -> Result<Saturated, WaterError> {
-    saturated(Phase::Vapour, pressure)
+    Tangent::at(pressure)?.saturated(Phase::Vapour)
+}
+
+/// Saturated liquid and vapour at a pressure (Pa).
+///
+/// # Errors
+/// A pressure outside 611.213 Pa to 22.064 megapascal.
+pub fn both(pressure: f64) -> Result<(Saturated, Saturated), WaterError> {
+    let tangent = Tangent::at(pressure)?;
+    Ok((tangent.saturated(Phase::Liquid)?, tangent.saturated(Phase::Vapour)?))
 }
 
 /// Closer to the critical pressure than this, equation (31) and the equation of region 3 disagree by more than the
 /// pressures of liquid and vapour differ, so that one of the roots may be missing, Pa.
 const NEXT_TO_CRITICAL: f64 = 10.0;
 
-fn saturated(phase: Phase, pressure: f64) -> Result<Saturated, WaterError> {
-    let (value, by_pressure) = temperature(pressure)?;
-    // Next to the critical point the tangent is followed.
-    let touching = pressure.min(CRITICAL_PRESSURE - NEXT_TO_CRITICAL);
-    let (touching_temperature, slope) = temperature(touching)?;
-    let region = Region::of_phase(phase, touching, touching_temperature)?;
-    let properties = region.properties(touching, touching_temperature)?;
-    let along = |partial: Partial| {
-        let by_pressure = partial.by_pressure + partial.by_temperature * slope;
-        AlongSaturation { value: partial.value + by_pressure * (pressure - touching), by_pressure }
-    };
-    Ok(Saturated {
-        temperature: AlongSaturation { value, by_pressure },
-        volume: along(properties.volume),
-        enthalpy: along(properties.enthalpy),
-        entropy: along(properties.entropy),
-    })
+/// The saturation line at a pressure. Next to the critical point its properties follow their tangent from the last
+/// point where both phases exist.
+struct Tangent {
+    temperature: AlongSaturation,
+    touching_pressure: f64,
+    touching_temperature: AlongSaturation,
+    distance: f64,
+}
+
+impl Tangent {
+    fn at(pressure: f64) -> Result<Self, WaterError> {
+        let along = |pressure| {
+            let (value, by_pressure) = temperature(pressure)?;
+            Ok(AlongSaturation { value, by_pressure })
+        };
+        let temperature = along(pressure)?;
+        let last = CRITICAL_PRESSURE - NEXT_TO_CRITICAL;
+        let (touching_pressure, touching_temperature) =
+            if pressure <= last { (pressure, temperature) } else { (last, along(last)?) };
+        Ok(Self {
+            temperature,
+            touching_pressure,
+            touching_temperature,
+            distance: pressure - touching_pressure,
+        })
+    }
+
+    fn saturated(&self, phase: Phase) -> Result<Saturated, WaterError> {
+        let (pressure, temperature) = (self.touching_pressure, self.touching_temperature);
+        let region = Region::of_phase(phase, pressure, temperature.value)?;
+        let properties = region.properties(pressure, temperature.value)?;
+        let along = |partial: Partial| {
+            let by_pressure = partial.by_pressure + partial.by_temperature * temperature.by_pressure;
+            AlongSaturation { value: partial.value + by_pressure * self.distance, by_pressure }
+        };
+        Ok(Saturated {
+            temperature: self.temperature,
+            volume: along(properties.volume),
+            enthalpy: along(properties.enthalpy),
+            entropy: along(properties.entropy),
+        })
+    }
 }

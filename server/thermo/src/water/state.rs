@@ -55,7 +55,7 @@ impl State {
     /// The state at a pressure (Pa) and enthalpy (J/kg), the other input of [`State::by_other`].
     ///
     /// # Errors
-    /// A pressure outside 611.213 Pa to 100 MPa, or an enthalpy that no state at this pressure has.
+    /// A pressure outside 611.213 Pa to 100 megapascal, or an enthalpy that no state at this pressure has.
     pub fn from_pressure_enthalpy(pressure: f64, enthalpy: f64) -> Result<Self, WaterError> {
         Self::from_coordinate::<Enthalpy>(pressure, enthalpy)
     }
@@ -63,7 +63,7 @@ impl State {
     /// The state at a pressure (Pa) and entropy (J/(kg K)), the other input of [`State::by_other`].
     ///
     /// # Errors
-    /// A pressure outside 611.213 Pa to 100 MPa, or an entropy that no state at this pressure has.
+    /// A pressure outside 611.213 Pa to 100 megapascal, or an entropy that no state at this pressure has.
     pub fn from_pressure_entropy(pressure: f64, entropy: f64) -> Result<Self, WaterError> {
         Self::from_coordinate::<Entropy>(pressure, entropy)
     }
@@ -72,12 +72,12 @@ impl State {
     /// [`State::by_other`].
     ///
     /// # Errors
-    /// A pressure outside 611.213 Pa to 22.064 MPa, or a quality outside 0 to 1.
+    /// A pressure outside 611.213 Pa to 22.064 megapascal, or a quality outside 0 to 1.
     pub fn from_pressure_quality(pressure: f64, quality: f64) -> Result<Self, WaterError> {
         if !(0.0..=1.0).contains(&quality) {
             return Err(WaterError::Quality { value: quality });
         }
-        let (liquid, vapour) = (saturation::liquid(pressure)?, saturation::vapour(pressure)?);
+        let (liquid, vapour) = saturation::both(pressure)?;
         Ok(Self::mixture(pressure, &liquid, &vapour, (quality, 0.0, 1.0)))
     }
 
@@ -101,7 +101,7 @@ impl State {
                 Ok(Self::implicit::<C>(pressure, temperature, region, &properties))
             }
             Location::Mixture { .. } => {
-                let (liquid, vapour) = (saturation::liquid(pressure)?, saturation::vapour(pressure)?);
+                let (liquid, vapour) = saturation::both(pressure)?;
                 let (lower, upper) = (C::of_saturated(&liquid), C::of_saturated(&vapour));
                 let width = upper.value - lower.value;
                 let quality = ((value - lower.value) / width).clamp(0.0, 1.0);

@@ -1,0 +1,273 @@
+//! The pivot sequence: one trial factorisation with dynamic minimum degree.
+//!
+//! Nodes are the variables and the equations that take part. The symmetric matrix is kept as explicit sparse rows and
+//! eliminated numerically, so that every choice sees both the true fill and the true size of its pivot. Two kinds of
+//! pivots are taken (the 1x1 and 2x2 pivots of I. S. Duff and J. K. Reid, "The multifrontal solution of indefinite
+//! sparse symmetric linear equations", ACM TOMS 9, 1983, in the only combination that needs no search later):
+//!
+//! - a variable outside of the basis alone. Its pivot is at least its own weight: the Schur complement of the variables
+//!   is the Hessian of what is left after a partial minimisation, so it is the weight plus something that isn't
+//!   negative;
+//! - a variable of the basis with an equation. `[h, c; c, -e]` with `h >= 0` and `e >= 0` has the determinant
+//!   `-(h e + c^2)`, again without cancellation. An equation qualifies when the root of that is at least [`THRESHOLD`] times
+//!   the largest that the variable could have with any of its equations (rows equilibrated), which bounds the growth
+//!   of the elimination inside of the basis. Pairs that fail are delayed simply by not being chosen.
+//!
+//! The next pivot is the one with the smallest front. Zeros that arise stay in the pattern: it must hold for other values.
+
+use std::cmp::Reverse;
+use std::collections::BinaryHeap;
+
+/// A pair may be this much weaker than the best pair of its variable.
+const THRESHOLD: f64 = 0.1;
+
+/// A later factorisation may see a pair shrink by this against the best pair of its variable in the trial.
+const COLLAPSE: f64 = 1e-10;
+
+/// How a node may be eliminated.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) enum Role {
+    /// Alone: a variable outside of the basis, or a softened equation that follows from others.
+    Single,
+    /// A variable of the basis, together with an equation.
+    Lead,
+    /// An equation, together with a variable of the basis.
+    Partner,
+}
+
+/// One entry of a sparse row.
+#[derive(Clone, Copy, Debug)]
+pub(super) struct Entry {
+    pub(super) node: u32,
+    pub(super) value: f64,
+}
+
+/// One step of the elimination.
+#[derive(Clone, Debug)]
+pub(super) struct Pivot {
+    pub(super) first: u32,
+    pub(super) second: Option<u32>,
+    /// The front: nodes that are eliminated later and that this pivot touches, by node number.
+    pub(super) front: Vec<u32>,
+    /// The determinant of a pair must be at least this large in the scale of the graph.
+    pub(super) floor: f64,
+}
+
+/// The matrix on its way through the elimination.
+pub(super) struct Graph {
+    /// Off-diagonal entries of each row, ascending by node.
+    adjacency: Vec<Vec<Entry>>,
+    diagonal: Vec<f64>,
+    role: Vec<Role>,
+    alive: Vec<bool>,
+    /// Raised whenever a node is put into the queue anew: older places there are void.
+    stamp: Vec<u32>,
+    queue: BinaryHeap<Reverse<(u32, u32, u32)>>,
+    merged: Vec<Entry>,
+}
+
+/// A node's best pivot.
+#[derive(Clone, Copy)]
+struct Choice {
+    cost: u32,
+    partner: Option<u32>,
+    floor: f64,
+}
+
+impl Graph {
+    /// Takes a matrix with its sparse rows sorted by node, without diagonal and symmetric.
+    pub(super) fn new(adjacency: Vec<Vec<Entry>>, diagonal: Vec<f64>, role: Vec<Role>) -> Self {
+        let count = diagonal.len();
+        Self {
+            adjacency,
+            diagonal,
+            role,
+            alive: vec![true; count],
+            stamp: vec![0; count],
+            queue: BinaryHeap::new(),
+            merged: Vec::new(),
+        }
+    }
+
+    /// Eliminates everything and tells in which order.
+    pub(super) fn eliminate_all(mut self) -> Vec<Pivot> {
+        let mut pivots = Vec::with_capacity(self.role.len());
+        for node in 0..self.role.len() as u32 {
+            self.enqueue(node);
+        }
+        loop {
+            while let Some(Reverse((cost, node, stamp))) = self.queue.pop() {
+                if !self.alive[node as usize] || stamp != self.stamp[node as usize] {
+                    continue;
+                }
+                let choice = self.choice(node);
+                if choice.cost > cost {
+                    self.queue.push(Reverse((choice.cost, node, stamp)));
+                    continue;
+                }
+                pivots.push(self.eliminate(node, choice));
+            }
+            // Equations without a variable of the basis beside them are what is left: rounding has taken their pair.
+            let Some(node) = self.alive.iter().position(|alive| *alive) else { break };
+            self.role[node] = Role::Single;
+            self.enqueue(node as u32);
+        }
+        pivots
+    }
+
+    fn enqueue(&mut self, node: u32) {
+        if self.role[node as usize] != Role::Partner {
+            let cost = self.choice(node).cost;
+            self.stamp[node as usize] += 1;
+            self.queue.push(Reverse((cost, node, self.stamp[node as usize])));
+        }
+    }
+
+    /// The best pivot that a node leads; its cost is twice the size of its front, one less for a pair, because a pair
+    /// takes two nodes out with one front.
+    fn choice(&self, node: u32) -> Choice {
+        let own = &self.adjacency[node as usize];
+        let alone = Choice { cost: 2 * own.len() as u32, partner: None, floor: 0.0 };
+        if self.role[node as usize] != Role::Lead {
+            return alone;
+        }
+        let partners = own.iter().filter(|entry| self.role[entry.node as usize] == Role::Partner);
+        let sized = partners.map(|entry| (entry.node, self.strength(node, entry)));
+        let strongest = sized.clone().fold(0.0_f64, |most, (_, strength)| most.max(strength));
+        let permitted = sized.filter(|(_, strength)| strongest > 0.0 && *strength >= THRESHOLD * strongest);
+        let priced = permitted.map(|(row, _)| (self.front_of_pair(node, row), row)).min();
+        priced.map_or(alone, |(front, row)| Choice {
+            cost: (2 * front).saturating_sub(1),
+            partner: Some(row),
+            floor: (COLLAPSE * strongest).powi(2),
+        })
+    }
+
+    /// The root of the determinant's magnitude.
+    fn strength(&self, node: u32, entry: &Entry) -> f64 {
+        let diagonal = -self.diagonal[node as usize] * self.diagonal[entry.node as usize];
+        (entry.value * entry.value + diagonal.max(0.0)).sqrt()
+    }
+
+    /// How many nodes besides the two are adjacent to either.
+    fn front_of_pair(&self, first: u32, second: u32) -> u32 {
+        let (a, b) = (&self.adjacency[first as usize], &self.adjacency[second as usize]);
+        let mut b_rest = b.iter().peekable();
+        let mut shared = 0;
+        for entry in a {
+            while b_rest.next_if(|other| other.node < entry.node).is_some() {}
+            shared += u32::from(b_rest.next_if(|other| other.node == entry.node).is_some());
+        }
+        (a.len() + b.len()) as u32 - 2 - shared
+    }
+
+    fn eliminate(&mut self, node: u32, choice: Choice) -> Pivot {
+        let first = std::mem::take(&mut self.adjacency[node as usize]);
+        self.alive[node as usize] = false;
+        let mut front = Vec::with_capacity(choice.cost as usize / 2 + 1);
+        let mut left = Vec::with_capacity(front.capacity());
+        let mut right = Vec::with_capacity(front.capacity());
+        if let Some(partner) = choice.partner {
+            let second = std::mem::take(&mut self.adjacency[partner as usize]);
+            self.alive[partner as usize] = false;
+            let coupling = first.iter().find(|entry| entry.node == partner).map_or(0.0, |entry| entry.value);
+            let (h, e) = (self.diagonal[node as usize], self.diagonal[partner as usize]);
+            let determinant = h * e - coupling * coupling;
+            for (node, a, b) in union(&first, &second, (node, partner)) {
+                front.push(node);
+                left.push([a, b]);
+                right.push([(e * a - coupling * b) / determinant, (h * b - coupling * a) / determinant]);
+            }
+        } else {
+            let pivot = self.diagonal[node as usize];
+            for entry in &first {
+                front.push(entry.node);
+                left.push([entry.value, 0.0]);
+                right.push([if pivot == 0.0 { 0.0 } else { entry.value / pivot }, 0.0]);
+            }
+        }
+        for at in 0..front.len() {
+            self.update(at, right[at], &front, &left, (node, choice.partner));
+        }
+        self.requeue(&front, choice.partner.is_none());
+        Pivot { first: node, second: choice.partner, front, floor: choice.floor }
+    }
+
+    /// Subtracts the outer product in one row of the front.
+    fn update(
+        &mut self,
+        at: usize,
+        multiplier: [f64; 2],
+        front: &[u32],
+        left: &[[f64; 2]],
+        gone: (u32, Option<u32>),
+    ) {
+        let target = front[at] as usize;
+        let change = |number: usize| multiplier[0] * left[number][0] + multiplier[1] * left[number][1];
+        self.diagonal[target] -= change(at);
+        let old = std::mem::take(&mut self.adjacency[target]);
+        let mut merged = std::mem::take(&mut self.merged);
+        merged.clear();
+        let mut number = 0;
+        for entry in &old {
+            if entry.node == gone.0 || Some(entry.node) == gone.1 {
+                continue;
+            }
+            while number < front.len() && front[number] < entry.node {
+                if number != at {
+                    merged.push(Entry { node: front[number], value: -change(number) });
+                }
+                number += 1;
+            }
+            let mut value = entry.value;
+            if number < front.len() && front[number] == entry.node {
+                value -= change(number);
+                number += 1;
+            }
+            merged.push(Entry { node: entry.node, value });
+        }
+        for number in number..front.len() {
+            if number != at {
+                merged.push(Entry { node: front[number], value: -change(number) });
+            }
+        }
+        self.adjacency[target] = merged;
+        self.merged = old;
+    }
+
+    /// Prices the touched nodes anew. A variable eliminated alone makes its equations shorter, so their other variables
+    /// may have become cheaper; otherwise prices of the untouched only rise, which is noticed when their turn comes.
+    fn requeue(&mut self, front: &[u32], alone: bool) {
+        let mut touched = front.to_vec();
+        if alone {
+            for &node in front.iter().filter(|node| self.role[**node as usize] == Role::Partner) {
+                touched.extend(self.adjacency[node as usize].iter().map(|entry| entry.node));
+            }
+            touched.sort_unstable();
+            touched.dedup();
+        }
+        for node in touched {
+            self.enqueue(node);
+        }
+    }
+}
+
+/// Both values of every node that stands in either row, without the pivots themselves.
+fn union<'a>(
+    a: &'a [Entry],
+    b: &'a [Entry],
+    pivots: (u32, u32),
+) -> impl Iterator<Item = (u32, f64, f64)> + 'a {
+    let (mut a, mut b) = (a.iter().peekable(), b.iter().peekable());
+    let merged = std::iter::from_fn(move || {
+        let node = match (a.peek(), b.peek()) {
+            (Some(x), Some(y)) => x.node.min(y.node),
+            (Some(x), None) => x.node,
+            (None, y) => y?.node,
+        };
+        let x = a.next_if(|entry| entry.node == node).map_or(0.0, |entry| entry.value);
+        let y = b.next_if(|entry| entry.node == node).map_or(0.0, |entry| entry.value);
+        Some((node, x, y))
+    });
+    merged.filter(move |(node, ..)| *node != pivots.0 && *node != pivots.1)
+}

@@ -47,6 +47,7 @@ class Balance:
                                   [gradient, jacobian, self.c, ca.hessian(lagrangian, self.x)[0]])
         self.linear = ca.Function("linear", [self.x, parameters], [
             jacobian, ca.jacobian(residual, self.x), residual, values, ca.jacobian(values, self.x)])
+        self.sum_of_squares = ca.Function("sum_of_squares", [self.x, parameters], [2 * self.objective])
         self.solver = ca.nlpsol("balance", "ipopt", {"x": self.x, "f": self.objective, "g": self.c, "p": parameters},
                                 _IPOPT)
         self.lower, self.upper = np.array([_range(v) for v in model.variables.values()]).T
@@ -61,15 +62,19 @@ class Balance:
                             lbx=self.lower, ubx=self.upper)
         self.status = self.solver.stats()["return_status"]
         self.iterations = self.solver.stats()["iter_count"]
+        assert np.all(np.abs(np.array(found["lam_x"])) < 1e-4), "a bound of the search was reached"
         x, multipliers = np.array(found["x"]).ravel(), np.array(found["lam_g"]).ravel()
-        for _ in range(4):
+        for _ in range(3):
             gradient, jacobian, c, hessian = (np.array(part) for part in self.newton(x, multipliers, parameters))
             n, m = len(x), len(multipliers)
             matrix = np.block([[hessian, jacobian.T], [jacobian, np.zeros((m, m))]])
             right = -np.concatenate([gradient.ravel() + jacobian.T @ multipliers, c.ravel()])
             step = _equilibrated_least_squares(matrix, right)
             x, multipliers = x + step[:n], multipliers + step[n:]
-        return x, multipliers, self.residual(x, multipliers, parameters)
+        residual = self.residual(x, multipliers, parameters)
+        polished = float(self.sum_of_squares(x, parameters)) - 2 * float(found["f"])
+        assert abs(polished) < 1e-5, f"the Newton steps left IPOPT's solution: sum of squares changed by {polished:.1e}"
+        return x, multipliers, residual
 
     def residual(self, x, multipliers, parameters):
         """Largest entry of the Karush-Kuhn-Tucker residual, each relative to its largest term."""

@@ -69,6 +69,46 @@ def _reheat_start():
     return start | {f"{name}.mass_flow": value * T_PER_H for name, value in flows.items()}
 
 
-STARTS = {"reheat_unit": _reheat_start()}
-TARGETS = {"reheat_unit": _reheat_unit()}
+def _exchanger_train():
+    pressures = {
+        "stock_feed": 2.2, "stock_1": 11.4, "stock_3": 8.9, "product": 8.0, "product_top": 5.6, "water_supply": 15.2,
+        "water_2": 13.8, "water_3": 13.2, "flash_steam": 1.14,
+    }
+    temperatures = {
+        "stock_feed": 21.5, "stock_2": 58.0, "stock_a_hot": 109.0, "stock_b_hot": 106.0, "product": 148.0,
+        "product_top": 147.2, "water_supply": 182.0, "tracing_condensate": 84.0,
+    }
+    flows = {"stock_feed": 121.0, "stock_b": 57.5, "water_supply": 112.0, "water_b": 52.0}
+    plain = {
+        "exchanger_3.heat_loss": 135e3, "pump_motor.efficiency": 0.931, "stock_pump.efficiency": 0.72,
+        "exchanger_1.cold_pressure_drop": 0.65 * BAR,
+        "exchanger_2a.cold_pressure_drop": 0.75 * BAR, "exchanger_2b.cold_pressure_drop": 0.85 * BAR,
+        "exchanger_2a.hot_pressure_drop": 0.45 * BAR, "exchanger_2b.hot_pressure_drop": 0.55 * BAR,
+        "exchanger_3.hot_pressure_drop": 0.75 * BAR, "trim_valve.pressure_drop": 0.28 * BAR,
+    }
+    values = {f"{name}.pressure": value * BAR for name, value in pressures.items()}
+    values |= {f"{name}.temperature": _celsius(value) for name, value in temperatures.items()}
+    values |= {f"{name}.mass_flow": value * T_PER_H for name, value in flows.items()}
+    return _exactly(values | plain)
+
+
+def _exchanger_start():
+    temperatures = {"water_1": 161, "water_a_cool": 133, "water_b_cool": 134, "water_3": 114, "flash_steam": 103}
+    return {f"{name}.temperature": _celsius(value) for name, value in temperatures.items()} | {
+        "flash_steam.mass_flow": 2 * T_PER_H, "stock_pump.power": 50e3}
+
+
+def _header_network():
+    flows = {
+        "boiler_1_steam": 82.0, "boiler_2_steam": 95.0, "hp_to_turbine": 118.0, "hp_letdown": 9.0,
+        "turbine_to_mp": 46.0, "mp_to_dryer": 21.0, "mp_to_still": 17.0, "lp_to_evaporators": 54.0,
+        "lp_to_ring": 22.5, "ring_north": 9.0, "ring_to_hall": 8.0,
+    }
+    return _exactly({f"{name}.mass_flow": value * T_PER_H for name, value in flows.items()})
+
+
+STARTS = {"reheat_unit": _reheat_start(), "exchanger_train": _exchanger_start(), "header_network": {}}
+TARGETS = {
+    "reheat_unit": _reheat_unit(), "exchanger_train": _exchanger_train(), "header_network": _header_network(),
+}
 SEEDS = {"reheat_unit": 20260210, "exchanger_train": 41, "header_network": 7}

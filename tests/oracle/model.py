@@ -263,15 +263,16 @@ class Model:
                 groups.setdefault(side, []).append((port, stream))
             for members in groups.values():
                 mass.append(({stream: (1 if self._enters(port) else -1) for port, stream in members}, 30.0))
-                weight = 0.0 if kind in ("pump", "turbine", "boiler", "valve", "desuperheater") else 1.0
+                weight = 0.0 if kind in ("pump", "turbine", "boiler", "valve", "desuperheater", "drum") else 1.0
                 first = members[0][1]
                 for port, stream in members[1:]:
                     minor = port.startswith(("drain_inlet", "spray")) or kind in ("deaerator",)
                     pressure.append(({first: 1, stream: -1}, 0.01 if minor else weight))
                     heated = kind in sides or kind in ("turbine", "boiler", "heat_user", "deaerator") or minor
                     temperature.append(({first: 1, stream: -1}, 0.01 if heated else 1.0))
-            if "blowdown" in ports:
-                pressure.append(({ports["steam"]: 1, ports["blowdown"]: -1}, 1.0))
+            for port in ("water", "blowdown"):
+                if port in ports:
+                    pressure.append(({ports["steam"]: 1, ports[port]: -1}, 1.0))
         spread("mass_flow", lambda v: v, lambda v: max(v, 0.1), mass, 10.0)
         spread("pressure", math.log, math.exp, pressure, math.log(3e5))
         spread("temperature", lambda v: v, lambda v: v, temperature, 350.0)
@@ -383,7 +384,9 @@ class Model:
     def energy_balance(self, machine, inlets, outlets, leaving=0, side=""):
         if self._closes(machine, "energy"):
             total = self.energy(inlets) - self.energy(outlets) - leaving
-            self.equation(f"{machine}: {side}energy", total, 1e8)
+            carried = [self._start(stream, "mass_flow") * self._start(stream, "enthalpy") for stream in inlets + outlets]
+            largest = max(map(abs, carried))
+            self.equation(f"{machine}: {side}energy", total, max(largest, 1e4))
 
     def heat_loss(self, machine):
         name = f"{machine}.heat_loss"
@@ -434,6 +437,9 @@ class Model:
         symbols = [variable.symbol for variable in self.variables.values()]
         starts = [variable.start / variable.scale for variable in self.variables.values()]
         return float(ca.Function("f", [ca.vertcat(*symbols)], [expression])(starts))
+
+    def _start(self, stream, what):
+        return self.variables[f"{stream}.{what}"].start
 
     # ---------------------------------------------------------------------------------------------------------- kinds
 

@@ -1,0 +1,7 @@
+//! Water as its users see it.
+
+mod common;
+mod identities;
+mod limits;
+mod oracle;
+mod release;

@@ -1,19 +1,16 @@
 //! Starting values in region 1: the backward equations of section 5.2 of IAPWS R7-97(2012), good to 25 mK.
 
 use super::backward1_table::{TemperaturePh, TemperaturePs};
-use super::polynomial::{Powers, sum};
+use super::polynomial::{Powers, Terms};
 
 /// Equation (11): temperature (K) by pressure (Pa) and enthalpy (J/kg).
 pub(super) fn temperature_ph(pressure: f64, enthalpy: f64) -> f64 {
-    sum::<TemperaturePh, 7, 0, _, _>(
-        &Powers::new(pressure / 1e6),
-        &Powers::<33, 0>::new(enthalpy / 2500e3 + 1.0),
-    )
+    TemperaturePh::sum(&Powers::<7, 0>::new(pressure / 1e6), &Powers::<33, 0>::new(enthalpy / 2500e3 + 1.0))
 }
 
 /// Equation (13): temperature (K) by pressure (Pa) and entropy (J/(kg K)).
 pub(super) fn temperature_ps(pressure: f64, entropy: f64) -> f64 {
-    sum::<TemperaturePs, 5, 0, _, _>(&Powers::new(pressure / 1e6), &Powers::<33, 0>::new(entropy / 1e3 + 2.0))
+    TemperaturePs::sum(&Powers::<5, 0>::new(pressure / 1e6), &Powers::<33, 0>::new(entropy / 1e3 + 2.0))
 }
 
 #[cfg(test)]

@@ -3,7 +3,7 @@
 use super::backward2_table::{
     TemperaturePhA, TemperaturePhB, TemperaturePhC, TemperaturePsA, TemperaturePsB, TemperaturePsC,
 };
-use super::polynomial::{Powers, sum};
+use super::polynomial::{Powers, Terms};
 
 /// Pressure up to which subregion 2a reaches, Pa.
 const HIGHEST_PRESSURE_A: f64 = 4e6;
@@ -26,11 +26,11 @@ pub(super) fn temperature_ph(pressure: f64, enthalpy: f64) -> f64 {
     let pi = pressure / 1e6;
     let eta = enthalpy / 2000e3;
     if pressure <= HIGHEST_PRESSURE_A {
-        sum::<TemperaturePhA, 8, 0, _, _>(&Powers::new(pi), &Powers::<45, 0>::new(eta - 2.1))
+        TemperaturePhA::sum(&Powers::<8, 0>::new(pi), &Powers::<45, 0>::new(eta - 2.1))
     } else if enthalpy >= enthalpy_bc(pressure) {
-        sum::<TemperaturePhB, 10, 0, _, _>(&Powers::new(pi - 2.0), &Powers::<41, 0>::new(eta - 2.6))
+        TemperaturePhB::sum(&Powers::<10, 0>::new(pi - 2.0), &Powers::<41, 0>::new(eta - 2.6))
     } else {
-        sum::<TemperaturePhC, 14, 7, _, _>(&Powers::new(pi + 25.0), &Powers::<23, 0>::new(eta - 1.8))
+        TemperaturePhC::sum(&Powers::<14, 7>::new(pi + 25.0), &Powers::<23, 0>::new(eta - 1.8))
     }
 }
 
@@ -39,17 +39,17 @@ pub(super) fn temperature_ps(pressure: f64, entropy: f64) -> f64 {
     let pi = pressure / 1e6;
     let sigma = entropy / 1e3;
     if pressure <= HIGHEST_PRESSURE_A {
-        sum::<TemperaturePsA, 13, 6, _, _>(
-            &Powers::new(pi.sqrt().sqrt()),
+        TemperaturePsA::sum(
+            &Powers::<13, 6>::new(pi.sqrt().sqrt()),
             &Powers::<46, 27>::new(sigma / 2.0 - 2.0),
         )
     } else if entropy >= ENTROPY_BC {
-        sum::<TemperaturePsB, 12, 6, _, _>(
-            &Powers::new(pi),
+        TemperaturePsB::sum(
+            &Powers::<12, 6>::new(pi),
             &Powers::<13, 0>::new(10.0 - sigma / REDUCING_ENTROPY_B),
         )
     } else {
-        sum::<TemperaturePsC, 10, 2, _, _>(&Powers::new(pi), &Powers::<6, 0>::new(2.0 - sigma / 2.9251))
+        TemperaturePsC::sum(&Powers::<10, 2>::new(pi), &Powers::<6, 0>::new(2.0 - sigma / 2.9251))
     }
 }
 

@@ -4,7 +4,7 @@ use super::backward3_table::{
     TemperaturePhA, TemperaturePhB, TemperaturePsA, TemperaturePsB, VolumePhA, VolumePhB, VolumePsA,
     VolumePsB,
 };
-use super::polynomial::{Powers, sum};
+use super::polynomial::{Powers, Terms};
 
 /// Critical entropy, the boundary between subregions 3a and 3b for functions of (p,s), J/(kg K).
 const CRITICAL_ENTROPY: f64 = 4.41202148223476e3;
@@ -23,15 +23,14 @@ pub(super) fn temperature_volume_ph(pressure: f64, enthalpy: f64) -> (f64, f64) 
     if enthalpy <= enthalpy_ab(pressure) {
         let (eta_t, eta_v) = (enthalpy / 2300e3 - 0.615, enthalpy / 2100e3 - 0.727);
         (
-            760.0
-                * sum::<TemperaturePhA, 25, 12, _, _>(&Powers::new(pi + 0.240), &Powers::<23, 0>::new(eta_t)),
-            0.0028 * sum::<VolumePhA, 21, 12, _, _>(&Powers::new(pi + 0.128), &Powers::<23, 0>::new(eta_v)),
+            760.0 * TemperaturePhA::sum(&Powers::<25, 12>::new(pi + 0.240), &Powers::<23, 0>::new(eta_t)),
+            0.0028 * VolumePhA::sum(&Powers::<21, 12>::new(pi + 0.128), &Powers::<23, 0>::new(eta_v)),
         )
     } else {
         let powers_of_eta = Powers::<17, 0>::new(enthalpy / 2800e3 - 0.720);
         (
-            860.0 * sum::<TemperaturePhB, 21, 12, _, _>(&Powers::new(pi + 0.298), &powers_of_eta),
-            0.0088 * sum::<VolumePhB, 15, 12, _, _>(&Powers::new(pi + 0.0661), &powers_of_eta),
+            860.0 * TemperaturePhB::sum(&Powers::<21, 12>::new(pi + 0.298), &powers_of_eta),
+            0.0088 * VolumePhB::sum(&Powers::<15, 12>::new(pi + 0.0661), &powers_of_eta),
         )
     }
 }
@@ -42,22 +41,14 @@ pub(super) fn temperature_volume_ps(pressure: f64, entropy: f64) -> (f64, f64) {
     if entropy <= CRITICAL_ENTROPY {
         let (sigma_t, sigma_v) = (entropy / 4.4e3 - 0.703, entropy / 4.4e3 - 0.755);
         (
-            760.0
-                * sum::<TemperaturePsA, 23, 12, _, _>(
-                    &Powers::new(pi + 0.240),
-                    &Powers::<37, 0>::new(sigma_t),
-                ),
-            0.0028 * sum::<VolumePsA, 19, 12, _, _>(&Powers::new(pi + 0.187), &Powers::<29, 0>::new(sigma_v)),
+            760.0 * TemperaturePsA::sum(&Powers::<23, 12>::new(pi + 0.240), &Powers::<37, 0>::new(sigma_t)),
+            0.0028 * VolumePsA::sum(&Powers::<19, 12>::new(pi + 0.187), &Powers::<29, 0>::new(sigma_v)),
         )
     } else {
         let (sigma_t, sigma_v) = (entropy / 5.3e3 - 0.818, entropy / 5.3e3 - 0.816);
         (
-            860.0
-                * sum::<TemperaturePsB, 27, 12, _, _>(
-                    &Powers::new(pi + 0.760),
-                    &Powers::<25, 0>::new(sigma_t),
-                ),
-            0.0088 * sum::<VolumePsB, 15, 12, _, _>(&Powers::new(pi + 0.298), &Powers::<13, 0>::new(sigma_v)),
+            860.0 * TemperaturePsB::sum(&Powers::<27, 12>::new(pi + 0.760), &Powers::<25, 0>::new(sigma_t)),
+            0.0088 * VolumePsB::sum(&Powers::<15, 12>::new(pi + 0.298), &Powers::<13, 0>::new(sigma_v)),
         )
     }
 }

@@ -198,13 +198,14 @@ fn solve<C: Coordinate>(
     for _ in 0..MOST_STEPS {
         let given = C::at(region, pressure, temperature)?;
         let next = temperature + (value - given.value) / given.by_temperature;
-        if next < lowest && temperature == lowest {
+        let settled = (next - temperature).abs() < RESOLUTION;
+        if next < lowest && (settled || temperature == lowest) {
             return Ok(Root::Below);
         }
-        if next > highest && temperature == highest {
+        if next > highest && (settled || temperature == highest) {
             return Ok(Root::Above);
         }
-        if (next - temperature).abs() < RESOLUTION {
+        if settled {
             return Ok(Root::Found(Location::Explicit { region, temperature: next, given }));
         }
         temperature = next.max(lowest).min(highest);

@@ -17,7 +17,37 @@ pub(super) trait Visitor {
 
 /// A table of terms.
 pub(super) trait Terms {
+    /// Shows all terms to the visitor.
     fn visit(visitor: &mut impl Visitor);
+
+    /// The sum over all terms with its derivatives. What isn't used of them costs nothing once this is inlined.
+    #[inline(always)]
+    fn sums<const A: usize, const ZERO_A: usize, const B: usize, const ZERO_B: usize>(
+        a: &Powers<A, ZERO_A>,
+        b: &Powers<B, ZERO_B>,
+    ) -> Sums {
+        let mut summing = Summing { a, b, i: 0, group: [0.0; 3], sums: Sums::default() };
+        Self::visit(&mut summing);
+        summing.close();
+        summing.sums
+    }
+
+    /// The sum over all terms.
+    #[inline(always)]
+    fn sum<const A: usize, const ZERO_A: usize, const B: usize, const ZERO_B: usize>(
+        a: &Powers<A, ZERO_A>,
+        b: &Powers<B, ZERO_B>,
+    ) -> f64 {
+        Self::sums(a, b).value
+    }
+
+    /// The coefficients, by `I`, of the polynomial in `a` that is left when `b` is held. No `I` may be negative.
+    #[inline(always)]
+    fn contract<const A: usize, const B: usize, const ZERO_B: usize>(b: &Powers<B, ZERO_B>) -> [f64; A] {
+        let mut contracting = Contracting { b, coefficients: [0.0; A] };
+        Self::visit(&mut contracting);
+        contracting.coefficients
+    }
 }
 
 /// Makes a type that is a table of [`Terms`] from the printed rows `(I, J, n)`.
@@ -128,28 +158,7 @@ impl<const A: usize, const ZERO_A: usize, const B: usize, const ZERO_B: usize> V
     }
 }
 
-/// The sum over all terms with its derivatives. What isn't used of them costs nothing once this is inlined.
-#[inline(always)]
-pub(super) fn sums<T: Terms, const A: usize, const ZERO_A: usize, const B: usize, const ZERO_B: usize>(
-    a: &Powers<A, ZERO_A>,
-    b: &Powers<B, ZERO_B>,
-) -> Sums {
-    let mut summing = Summing { a, b, i: 0, group: [0.0; 3], sums: Sums::default() };
-    T::visit(&mut summing);
-    summing.close();
-    summing.sums
-}
-
-/// The sum over all terms alone.
-#[inline(always)]
-pub(super) fn sum<T: Terms, const A: usize, const ZERO_A: usize, const B: usize, const ZERO_B: usize>(
-    a: &Powers<A, ZERO_A>,
-    b: &Powers<B, ZERO_B>,
-) -> f64 {
-    sums::<T, A, ZERO_A, B, ZERO_B>(a, b).value
-}
-
-/// Sums over `J` alone: the coefficients, by `I`, of the polynomial in `a` that is left when `b` is held.
+/// Sums over `J` alone.
 struct Contracting<'a, const A: usize, const B: usize, const ZERO_B: usize> {
     b: &'a Powers<B, ZERO_B>,
     coefficients: [f64; A],
@@ -160,16 +169,6 @@ impl<const A: usize, const B: usize, const ZERO_B: usize> Visitor for Contractin
     fn term(&mut self, i: i16, j: i16, n: f64) {
         self.coefficients[0_usize.wrapping_add_signed(isize::from(i))] += n * self.b.at(j);
     }
-}
-
-/// The coefficients, by `I`, of the polynomial in `a` that is left when `b` is held. No `I` may be negative.
-#[inline(always)]
-pub(super) fn contract<T: Terms, const A: usize, const B: usize, const ZERO_B: usize>(
-    b: &Powers<B, ZERO_B>,
-) -> [f64; A] {
-    let mut contracting = Contracting { b, coefficients: [0.0; A] };
-    T::visit(&mut contracting);
-    contracting.coefficients
 }
 
 #[cfg(test)]
@@ -212,7 +211,7 @@ mod tests {
     #[test]
     fn sums_agree_with_the_plain_formula_and_its_differences() {
         let (a, b) = (1.2, 0.8);
-        let sums = sums::<Example, _, _, _, _>(&Powers::<8, 2>::new(a), &Powers::<8, 3>::new(b));
+        let sums = Example::sums(&Powers::<8, 2>::new(a), &Powers::<8, 3>::new(b));
         let d = 1e-4;
         let close = |x: f64, y: f64| assert!((x / y - 1.0).abs() < 1e-6, "{x} {y}");
         close(sums.value, plain(a, b));

@@ -1,7 +1,7 @@
 //! Region 1, liquid water: equation (7) of IAPWS R7-97(2012), the Gibbs free energy over (p,T).
 
 use super::gibbs::{Gibbs, GibbsByTau};
-use super::polynomial::{Powers, sums};
+use super::polynomial::{Powers, Terms};
 use super::region1_table::Equation7;
 use super::{Partial, Properties};
 
@@ -35,7 +35,7 @@ impl Arguments {
 #[inline]
 pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
     let Arguments { a, b, pi_per_a, tau_per_b } = Arguments::new(pressure, temperature);
-    let sums = sums::<Equation7, I_COUNT, 0, J_COUNT, J_ZERO>(&Powers::new(a), &Powers::new(b));
+    let sums = Equation7::sums(&Powers::<I_COUNT, 0>::new(a), &Powers::<J_COUNT, J_ZERO>::new(b));
     Gibbs {
         value: sums.value,
         pi: pi_per_a * sums.a,
@@ -50,7 +50,7 @@ pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
 #[inline]
 pub(super) fn enthalpy(pressure: f64, temperature: f64) -> Partial {
     let Arguments { a, b, pi_per_a, tau_per_b } = Arguments::new(pressure, temperature);
-    let sums = sums::<Equation7, I_COUNT, 0, J_COUNT, J_ZERO>(&Powers::new(a), &Powers::new(b));
+    let sums = Equation7::sums(&Powers::<I_COUNT, 0>::new(a), &Powers::<J_COUNT, J_ZERO>::new(b));
     GibbsByTau {
         tau: tau_per_b * sums.b,
         pi_tau: pi_per_a * tau_per_b * sums.ab,

@@ -1,7 +1,7 @@
 //! Region 2, steam: equations (15) to (17) of IAPWS R7-97(2012), the Gibbs free energy over (p,T).
 
 use super::gibbs::{Gibbs, GibbsByTau};
-use super::polynomial::{Powers, sums};
+use super::polynomial::{Powers, Terms};
 use super::region2_table::{Equation16, Equation17};
 use super::{Partial, Properties};
 
@@ -30,8 +30,8 @@ pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
     let tau = REDUCING_TEMPERATURE / temperature;
     let b = residual_argument(tau);
     let tau_per_b = tau / b;
-    let ideal = sums::<Equation16, 1, 0, IDEAL_COUNT, IDEAL_ZERO>(&Powers::new(1.0), &Powers::new(tau));
-    let residual = sums::<Equation17, I_COUNT, 0, J_COUNT, 0>(&Powers::new(pi), &Powers::new(b));
+    let ideal = Equation16::sums(&Powers::<1, 0>::new(1.0), &Powers::<IDEAL_COUNT, IDEAL_ZERO>::new(tau));
+    let residual = Equation17::sums(&Powers::<I_COUNT, 0>::new(pi), &Powers::<J_COUNT, 0>::new(b));
     Gibbs {
         value: pi.ln() + ideal.value + residual.value,
         pi: 1.0 + residual.a,
@@ -49,8 +49,8 @@ pub(super) fn enthalpy(pressure: f64, temperature: f64) -> Partial {
     let tau = REDUCING_TEMPERATURE / temperature;
     let b = residual_argument(tau);
     let tau_per_b = tau / b;
-    let ideal = sums::<Equation16, 1, 0, IDEAL_COUNT, IDEAL_ZERO>(&Powers::new(1.0), &Powers::new(tau));
-    let residual = sums::<Equation17, I_COUNT, 0, J_COUNT, 0>(&Powers::new(pi), &Powers::new(b));
+    let ideal = Equation16::sums(&Powers::<1, 0>::new(1.0), &Powers::<IDEAL_COUNT, IDEAL_ZERO>::new(tau));
+    let residual = Equation17::sums(&Powers::<I_COUNT, 0>::new(pi), &Powers::<J_COUNT, 0>::new(b));
     GibbsByTau {
         tau: ideal.b + tau_per_b * residual.b,
         pi_tau: tau_per_b * residual.ab,

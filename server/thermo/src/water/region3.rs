@@ -1,7 +1,7 @@
 //! Region 3, around the critical point: equation (28) of IAPWS R7-97(2012), the Helmholtz free energy over density
 //! and temperature, with the density found for a pressure.
 
-use super::polynomial::{Powers, contract, sums};
+use super::polynomial::{Powers, Terms};
 use super::region3_table::Equation28;
 use super::{
     CRITICAL_DENSITY, CRITICAL_PRESSURE, CRITICAL_TEMPERATURE, GAS_CONSTANT, Partial, Phase, Properties,
@@ -35,7 +35,7 @@ pub(super) struct ByDensity {
 pub(super) fn by_density(density: f64, temperature: f64) -> ByDensity {
     let delta = density / CRITICAL_DENSITY;
     let tau = CRITICAL_TEMPERATURE / temperature;
-    let sums = sums::<Equation28, I_COUNT, 0, J_COUNT, 0>(&Powers::new(delta), &Powers::new(tau));
+    let sums = Equation28::sums(&Powers::<I_COUNT, 0>::new(delta), &Powers::<J_COUNT, 0>::new(tau));
     let value = LOGARITHM * delta.ln() + sums.value;
     let by_delta = LOGARITHM + sums.a;
     let by_delta_twice = sums.aa - LOGARITHM;
@@ -101,7 +101,7 @@ struct Isotherm {
 impl Isotherm {
     fn new(temperature: f64) -> Self {
         let tau = CRITICAL_TEMPERATURE / temperature;
-        let mut coefficients = contract::<Equation28, I_COUNT, J_COUNT, 0>(&Powers::new(tau));
+        let mut coefficients = Equation28::contract::<I_COUNT, J_COUNT, 0>(&Powers::new(tau));
         for (i, coefficient) in coefficients.iter_mut().enumerate() {
             *coefficient *= i as f64;
         }

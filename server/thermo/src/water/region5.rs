@@ -1,7 +1,7 @@
 //! Region 5, hot steam: equations (32) to (34) of IAPWS R7-97(2012), the Gibbs free energy over (p,T).
 
 use super::gibbs::{Gibbs, GibbsByTau};
-use super::polynomial::{Powers, sums};
+use super::polynomial::{Powers, Terms};
 use super::region5_table::{Equation33, Equation34};
 use super::{Partial, Properties};
 
@@ -17,8 +17,8 @@ const J_ZERO: usize = 3;
 pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
     let pi = pressure / REDUCING_PRESSURE;
     let powers_of_tau = Powers::<J_COUNT, J_ZERO>::new(REDUCING_TEMPERATURE / temperature);
-    let ideal = sums::<Equation33, 1, 0, J_COUNT, J_ZERO>(&Powers::new(1.0), &powers_of_tau);
-    let residual = sums::<Equation34, I_COUNT, 0, J_COUNT, J_ZERO>(&Powers::new(pi), &powers_of_tau);
+    let ideal = Equation33::sums(&Powers::<1, 0>::new(1.0), &powers_of_tau);
+    let residual = Equation34::sums(&Powers::<I_COUNT, 0>::new(pi), &powers_of_tau);
     Gibbs {
         value: pi.ln() + ideal.value + residual.value,
         pi: 1.0 + residual.a,
@@ -34,8 +34,8 @@ pub(super) fn properties(pressure: f64, temperature: f64) -> Properties {
 pub(super) fn enthalpy(pressure: f64, temperature: f64) -> Partial {
     let pi = pressure / REDUCING_PRESSURE;
     let powers_of_tau = Powers::<J_COUNT, J_ZERO>::new(REDUCING_TEMPERATURE / temperature);
-    let ideal = sums::<Equation33, 1, 0, J_COUNT, J_ZERO>(&Powers::new(1.0), &powers_of_tau);
-    let residual = sums::<Equation34, I_COUNT, 0, J_COUNT, J_ZERO>(&Powers::new(pi), &powers_of_tau);
+    let ideal = Equation33::sums(&Powers::<1, 0>::new(1.0), &powers_of_tau);
+    let residual = Equation34::sums(&Powers::<I_COUNT, 0>::new(pi), &powers_of_tau);
     GibbsByTau { tau: ideal.b + residual.b, pi_tau: residual.ab, tau_tau: ideal.bb + residual.bb }
         .enthalpy(pressure, temperature)
 }

@@ -1,7 +1,7 @@
 """Least squares under equations by IPOPT with exact derivatives, and the linearised uncertainties at the solution.
 
-Minimised is half the sum of ((reading - x) / sigma)^2 subject to every equation of the model. IPOPT's answer is sharpened
-by Newton steps on the full Karush-Kuhn-Tucker system with the exact Hessian. Uncertainties are linearised with the
+Minimised is half the sum of ((reading - x) / sigma)^2 subject to every equation of the model. IPOPT's answer is
+sharpened by Newton steps on the full Karush-Kuhn-Tucker system with the exact Hessian. Uncertainties are linearised with the
 Hessian of the sum of squares alone (Gauss-Newton), by singular value decomposition of dense matrices: nothing is
 regularised, what the null space touches is listed as unobservable.
 """
@@ -9,19 +9,25 @@ regularised, what the null space touches is listed as unobservable.
 import casadi as ca
 import numpy as np
 
-ca.GlobalOptions.setNumpyMode(1)
+ca.GlobalOptions.setNumpyMode(-1)
 
-_RANK = 1e-9       # singular values below this share of the largest are zero
-_TOUCHED = 1e-6    # a quantity is unobservable if its gradient along the null space is more than this share
+_RANK = 1e-9  # singular values below this share of the largest are zero
+_TOUCHED = 1e-6  # a quantity is unobservable if its gradient along the null space is more than this share
 _IPOPT = {
-    "ipopt.tol": 1e-9, "ipopt.constr_viol_tol": 1e-9, "ipopt.dual_inf_tol": 1e-6, "ipopt.max_iter": 500,
-    "ipopt.mu_init": 1e-8, "ipopt.nlp_scaling_method": "none", "ipopt.print_level": 0, "ipopt.sb": "yes",
+    "ipopt.tol": 1e-9,
+    "ipopt.constr_viol_tol": 1e-9,
+    "ipopt.dual_inf_tol": 1e-6,
+    "ipopt.max_iter": 500,
+    "ipopt.mu_init": 1e-8,
+    "ipopt.nlp_scaling_method": "none",
+    "ipopt.print_level": 0,
+    "ipopt.sb": "yes",
     "print_time": False,
 }
 
 
 class Balance:
-    """The optimiser's view of a model whose readings and standard deviations are parameters, so that it is built once."""
+    """The optimiser's view of a model; readings and standard deviations are parameters, so that it is built once."""
 
     def __init__(self, model):
         self.model = model
@@ -40,16 +46,23 @@ class Balance:
         gradient = ca.gradient(self.objective, self.x)
         jacobian = ca.jacobian(self.c, self.x)
         lagrangian = self.objective + ca.dot(multipliers, self.c)
-        self.quantities = [name for name in list(model.variables) + list(model.derived)
-                           if not name.endswith("isentropic_temperature")]
+        derived = [name for name, expression in model.derived.items() if not expression.is_constant()]
+        self.quantities = [
+            name for name in list(model.variables) + derived if not name.endswith("isentropic_temperature")
+        ]
         values = ca.vertcat(*[model.quantity(name) for name in self.quantities])
-        self.newton = ca.Function("newton", [self.x, multipliers, parameters],
-                                  [gradient, jacobian, self.c, ca.hessian(lagrangian, self.x)[0]])
-        self.linear = ca.Function("linear", [self.x, parameters], [
-            jacobian, ca.jacobian(residual, self.x), residual, values, ca.jacobian(values, self.x)])
+        self.newton = ca.Function(
+            "newton", [self.x, multipliers, parameters], [gradient, jacobian, self.c, ca.hessian(lagrangian, self.x)[0]]
+        )
+        self.linear = ca.Function(
+            "linear",
+            [self.x, parameters],
+            [jacobian, ca.jacobian(residual, self.x), residual, values, ca.jacobian(values, self.x)],
+        )
         self.sum_of_squares = ca.Function("sum_of_squares", [self.x, parameters], [2 * self.objective])
-        self.solver = ca.nlpsol("balance", "ipopt", {"x": self.x, "f": self.objective, "g": self.c, "p": parameters},
-                                _IPOPT)
+        self.solver = ca.nlpsol(
+            "balance", "ipopt", {"x": self.x, "f": self.objective, "g": self.c, "p": parameters}, _IPOPT
+        )
         self.lower, self.upper = np.array([_range(v) for v in model.variables.values()]).T
 
     def parameters(self, model=None):
@@ -58,8 +71,9 @@ class Balance:
 
     def solve(self, parameters, start=None):
         """The solution (scaled), its multipliers and the scaled Karush-Kuhn-Tucker residual."""
-        found = self.solver(x0=self.start if start is None else start, p=parameters, lbg=0, ubg=0,
-                            lbx=self.lower, ubx=self.upper)
+        found = self.solver(
+            x0=self.start if start is None else start, p=parameters, lbg=0, ubg=0, lbx=self.lower, ubx=self.upper
+        )
         self.status = self.solver.stats()["return_status"]
         self.iterations = self.solver.stats()["iter_count"]
         assert np.all(np.abs(np.array(found["lam_x"])) < 1e-4), "a bound of the search was reached"
@@ -86,9 +100,10 @@ class Balance:
         return float(max(dual.max(), primal.max()))
 
     def uncertainty(self, x, parameters):
-        """Sum of squares, degrees of freedom, value and standard uncertainty of each quantity, and what is unobservable."""
+        """Sum of squares, degrees of freedom, values, standard uncertainties, and what the null space touches."""
         jacobian, residual_jacobian, residual, values, gradients = (
-            np.array(part) for part in self.linear(x, parameters))
+            np.array(part) for part in self.linear(x, parameters)
+        )
         rows = np.linalg.norm(jacobian, axis=1, keepdims=True)
         left, singular, right = np.linalg.svd(jacobian / rows)
         rank = int((singular > _RANK * singular[0]).sum())
@@ -98,7 +113,10 @@ class Balance:
         reduced = residual_jacobian @ basis
         _, singular, right = np.linalg.svd(reduced)
         information = int((singular > _RANK * singular[0]).sum())
-        self.information_gap = (singular[information - 1], singular[information] if information < len(singular) else 0.0)
+        self.information_gap = (
+            singular[information - 1],
+            singular[information] if information < len(singular) else 0.0,
+        )
         unseen = basis @ right[information:].T
         self.null_directions = unseen.shape[1]
         gain = basis @ right[:information].T / singular[:information]

@@ -3,8 +3,8 @@
     python draw.py PLANT [--typical]
 
 The design of each plant is in `designs.py`: values that a designer would choose, given to the same equations as
-weighted targets, so that the truth closes exactly. Each reading is truth + sigma x standard normal, rounded as an instrument would show
-it. With --typical every tag's `typical` in the plant file is written anew as the rounded truth.
+weighted targets, so that the truth closes exactly. Each reading is truth + sigma x standard normal, rounded
+as an instrument would show it. With --typical every tag's `typical` in the plant file is written anew as the rounded truth.
 """
 
 import pathlib
@@ -30,8 +30,10 @@ def truth(name):
     parameters = balance.parameters()
     x, _, residual = balance.solve(parameters)
     square, degrees, values, _, touched = balance.uncertainty(x, parameters)
-    print(f"{name}: design {balance.status}, sum of squares {square:.3g}, degrees of freedom {degrees}, "
-          f"null directions {balance.null_directions}, residual {residual:.1e}")
+    print(
+        f"{name}: design {balance.status}, sum of squares {square:.3g}, degrees of freedom {degrees}, "
+        f"null directions {balance.null_directions}, residual {residual:.1e}"
+    )
     for quantity, free in zip(balance.quantities, touched):
         if free:
             print("  not fixed by the design:", quantity)
@@ -81,7 +83,7 @@ def write_typical(path, tags, shown):
         table = re.search(rf"\[tags\.{re.escape(tag)}\]\n(?:[^\[\n][^\n]*\n)*", text)
         body = re.sub(r"^typical = .*\n", "", table.group(0), flags=re.M)
         body = re.sub(r"^description = ", line + "description = ", body, flags=re.M)
-        text = text[: table.start()] + body + text[table.end():]
+        text = text[: table.start()] + body + text[table.end() :]
     path.write_text(text)
 
 

@@ -64,10 +64,10 @@ def region_2(pressure, temperature):
     first, second, ideal = _Powers(pi), _Powers(tau - 0.5), _Powers(tau)
     rows = list(zip(_CONST.Region2_n, map(int, _CONST.Region2_Li), map(int, _CONST.Region2_Lj)))
     ideal_rows = list(zip(_CONST.Region2_cp0_no, map(int, _CONST.Region2_cp0_Jo)))
-    gamma = (ca.log(pi) + _sum(n * ideal[j] for n, j in ideal_rows)
-             + _sum(n * first[i] * second[j] for n, i, j in rows))
-    gamma_tau = (_sum(n * j * ideal[j - 1] for n, j in ideal_rows if j != 0)
-                 + _sum(n * j * first[i] * second[j - 1] for n, i, j in rows if j != 0))
+    gamma = ca.log(pi) + _sum(n * ideal[j] for n, j in ideal_rows) + _sum(n * first[i] * second[j] for n, i, j in rows)
+    gamma_tau = _sum(n * j * ideal[j - 1] for n, j in ideal_rows if j != 0) + _sum(
+        n * j * first[i] * second[j - 1] for n, i, j in rows if j != 0
+    )
     gamma_pi = 1.0 / pi + _sum(n * i * first[i - 1] * second[j] for n, i, j in rows)
     return _from_gibbs(pressure, temperature, tau, pi, gamma, gamma_tau, gamma_pi)
 
@@ -103,10 +103,17 @@ def verify():
     second = ca.Function("second", [p, t], list(region_2(p, t)))
     line = ca.Function("line", [p], [saturation_temperature(p)])
     checks = [
-        (first(3e6, 300)[0], 115.331273e3), (first(80e6, 300)[1], 368.563852), (first(3e6, 500)[0], 975.542239e3),
-        (1 / first(3e6, 300)[2], 0.00100215168), (second(3500, 300)[0], 2549.91145e3),
-        (second(30e6, 700)[0], 2631.49474e3), (second(30e6, 700)[1], 5175.40298), (1 / second(30e6, 700)[2], 0.00542946619),
-        (line(0.1e6), 372.755919), (line(1e6), 453.035632), (line(10e6), 584.149488),
+        (first(3e6, 300)[0], 115.331273e3),
+        (first(80e6, 300)[1], 368.563852),
+        (first(3e6, 500)[0], 975.542239e3),
+        (1 / first(3e6, 300)[2], 0.00100215168),
+        (second(3500, 300)[0], 2549.91145e3),
+        (second(30e6, 700)[0], 2631.49474e3),
+        (second(30e6, 700)[1], 5175.40298),
+        (1 / second(30e6, 700)[2], 0.00542946619),
+        (line(0.1e6), 372.755919),
+        (line(1e6), 453.035632),
+        (line(10e6), 584.149488),
     ]
     for computed, printed in checks:
         assert abs(float(computed) / printed - 1) < 5e-9, (float(computed), printed)

@@ -14,10 +14,10 @@ are known here. What the plant file format leaves open is decided as follows.
 * Exchangers: duty is what the cold side takes; the hot side gives duty + heat_loss; terminal difference is
   T_sat(hot inlet pressure) - T(cold outlet), drain approach T(hot outlet) - T(cold inlet), the logarithmic mean
   difference that of counterflow, ua = duty / logarithmic mean difference.
-* Boiler: duty = outlets - inlets of both circuits, blowdown saturated at the drum pressure; steam and reheat have a mass
-  balance each.
-* Generator: electric_power = efficiency * power; motor: power = efficiency * electric_power; on a shaft what turbines and
-  motors make is what the others take plus `loss` plus (1 - efficiency) of what is made for each gearbox.
+* Boiler: duty = outlets - inlets of both circuits, blowdown saturated at the drum pressure; steam and reheat
+  have a mass balance each.
+* Generator: electric_power = efficiency * power; motor: power = efficiency * electric_power; on a shaft what
+  turbines and motors make is what the others take plus `loss` plus (1 - efficiency) of what is made for each gearbox.
 """
 
 import math
@@ -116,7 +116,8 @@ class Model:
     """Variables, equations, measurements and quantities of one plant.
 
     `readings` maps tags to numbers in their unit (None where there is none) or, with `targets`, is left out and
-    `targets` maps quantities to (SI value, sigma), with `starts` for the others: so a truth is designed with the same equations.
+    `targets` maps quantities to (SI value, sigma), with `starts` for the others: so a truth is designed with the same
+    equations.
     """
 
     def __init__(self, path, readings=None, targets=None, starts=None):
@@ -135,7 +136,9 @@ class Model:
                     machine, port = entry[end].split(".", 1)
                     self.ports[machine][port] = stream
         self.with_energy = {
-            stream for machine, ports in self.ports.items() for stream in ports.values()
+            stream
+            for machine, ports in self.ports.items()
+            for stream in ports.values()
             if "energy" in self.equipment[machine].get("closes", ["mass", "energy"])
         }
         self._surroundings()
@@ -226,6 +229,7 @@ class Model:
     def _guess(self):
         """Spreads known flows, pressures and temperatures over the streams that lack them."""
         import numpy as np
+
         names = list(self.plant["streams"])
         index = {name: i for i, name in enumerate(names)}
 
@@ -239,7 +243,9 @@ class Model:
                 matrix.append(row)
                 right.append(value * weight)
 
-            known = [forward(self.starts[f"{name}.{quantity}"]) for name in names if f"{name}.{quantity}" in self.starts]
+            known = [
+                forward(self.starts[f"{name}.{quantity}"]) for name in names if f"{name}.{quantity}" in self.starts
+            ]
             centre = float(np.median(known)) if known else default
             for name in names:
                 if f"{name}.{quantity}" in self.starts:
@@ -331,8 +337,11 @@ class Model:
             self.quantity(f"{stream}.quality")
 
     def state(self, stream):
-        return (self.quantity(f"{stream}.pressure"), self.quantity(f"{stream}.temperature"),
-                self.quantity(f"{stream}.enthalpy"))
+        return (
+            self.quantity(f"{stream}.pressure"),
+            self.quantity(f"{stream}.temperature"),
+            self.quantity(f"{stream}.enthalpy"),
+        )
 
     def _stream_quantity(self, stream, what):
         p, t, h = self.state(stream)
@@ -358,7 +367,7 @@ class Model:
         return self.quantity(f"{stream}.mass_flow")
 
     def energy(self, streams):
-        """What the streams carry, W: enthalpy, and potential and kinetic energy where the file states what they need."""
+        """What the streams carry, W: enthalpy, and potential and kinetic energy where the file states their keys."""
         total = 0
         for stream in streams:
             entry = self.plant["streams"][stream]
@@ -384,7 +393,9 @@ class Model:
     def energy_balance(self, machine, inlets, outlets, leaving=0, side=""):
         if self._closes(machine, "energy"):
             total = self.energy(inlets) - self.energy(outlets) - leaving
-            carried = [self._start(stream, "mass_flow") * self._start(stream, "enthalpy") for stream in inlets + outlets]
+            carried = [
+                self._start(stream, "mass_flow") * self._start(stream, "enthalpy") for stream in inlets + outlets
+            ]
             largest = max(map(abs, carried))
             self.equation(f"{machine}: {side}energy", total, max(largest, 1e4))
 
@@ -425,8 +436,9 @@ class Model:
             if number < self._number(vapour[1]):
                 x = (entropy - liquid[1]) / (vapour[1] - liquid[1])
                 return liquid[0] + x * (vapour[0] - liquid[0])
-        temperature = self.variable(f"{name}.isentropic_temperature", _SCALES["temperature"],
-                                    self.starts[f"{end}.temperature"])
+        temperature = self.variable(
+            f"{name}.isentropic_temperature", _SCALES["temperature"], self.starts[f"{end}.temperature"]
+        )
         region = if97.region_1 if fluid.phase == "liquid" else if97.region_2
         enthalpy, reached, _ = region(pressure, temperature)
         self.equation(f"{name}: isentropic", reached - entropy, 1e3)
@@ -493,7 +505,9 @@ class Model:
         self.energy_balance(machine, inlets, outlets, self.heat_loss(machine) - power)
         start, end = ports["inlet"], ports["outlet"]
         ideal = self._isentropic(f"{machine}.efficiency", start, end)
-        self.derived[f"{machine}.efficiency"] = (ideal - self.enthalpy(start)) / (self.enthalpy(end) - self.enthalpy(start))
+        self.derived[f"{machine}.efficiency"] = (ideal - self.enthalpy(start)) / (
+            self.enthalpy(end) - self.enthalpy(start)
+        )
         self.derived[f"{machine}.pressure_rise"] = self.pressure(end) - self.pressure(start)
         self.derived[f"{machine}.pressure_ratio"] = self.pressure(end) / self.pressure(start)
 

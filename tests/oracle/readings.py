@@ -7,7 +7,9 @@ def read(path):
     """A list of (time, {tag: number or None})."""
     with open(path, newline="") as file:
         rows = list(csv.reader(file))
-    return [(row[0], {tag: float(cell) if cell else None for tag, cell in zip(rows[0][1:], row[1:])}) for row in rows[1:]]
+    return [
+        (row[0], {tag: float(cell) if cell else None for tag, cell in zip(rows[0][1:], row[1:])}) for row in rows[1:]
+    ]
 
 
 def write(path, tags, rows):

@@ -3,8 +3,8 @@
     python reconcile.py PLANT [PLANT ...]      writes ../plants/expected/PLANT.json
 
 Sums of squares, degrees of freedom, values and standard uncertainties in SI (Pa absolute, K, kg/s, J/kg, W, ratios).
-A quantity is unobservable if the null space touches it or its standard uncertainty exceeds what it can span (a pressure: its value;
-100 K; 500 kJ/kg; 100 points; the largest flow or power read); its value and sigma are then left out.
+A quantity is unobservable if the null space touches it or its standard uncertainty exceeds what it can span (a
+pressure: its value; 100 K; 500 kJ/kg; 100 points; the largest flow or power read or given softly); its value and sigma are then left out.
 """
 
 import json
@@ -20,6 +20,7 @@ import readings
 from balance import Balance
 from model import Model
 
+POWERS = ("power", "electric_power", "duty", "heat_loss", "loss")
 PLANTS = pathlib.Path(__file__).parent.parent / "plants"
 
 
@@ -37,8 +38,8 @@ def limit(balance, quantity, value):
         return 1.0
     if what == "mass_flow":
         return max((size for name, size in read.items() if name.endswith(".mass_flow")), default=np.inf)
-    if what in ("power", "electric_power", "duty", "heat_loss", "loss"):
-        return max((size for name, size in read.items() if name.endswith(("power", "duty"))), default=np.inf)
+    if what in POWERS:
+        return max((size for name, size in read.items() if name.rpartition(".")[2] in POWERS), default=np.inf)
     return np.inf
 
 
@@ -57,7 +58,12 @@ def balance_row(balance, parameters):
             stored[name] = {"value": float(value), "sigma": float(spread)}
             if name.endswith(".mass_flow") and value < 0:
                 print("  negative flow:", name, value)
-    return {"sum_of_squares": square, "degrees_of_freedom": degrees, "values": stored, "unobservable": unobservable}, residual
+    return {
+        "sum_of_squares": square,
+        "degrees_of_freedom": degrees,
+        "values": stored,
+        "unobservable": unobservable,
+    }, residual
 
 
 def load(name):
@@ -74,17 +80,22 @@ def main():
             balance = Balance(model)
             row, residual = balance_row(balance, balance.parameters())
             rows.append({"time": time} | row)
-            print(f"{name} {time}: {len(balance.names)} variables, {len(model.equations)} equations "
-                  f"({balance.dependent_equations} dependent), {len(model.plant['tags'])} tags, "
-                  f"{len(model.measurements) - len(model.plant['tags'])} soft givens, sum of squares "
-                  f"{row['sum_of_squares']:.6f}, {row['degrees_of_freedom']} degrees of freedom, null directions "
-                  f"{balance.null_directions}, {balance.iterations} iterations, residual {residual:.1e}, gaps "
-                  f"{balance.singular_gap[0]:.0e}/{balance.singular_gap[1]:.0e} "
-                  f"{balance.information_gap[0]:.0e}/{balance.information_gap[1]:.0e}")
+            print(
+                f"{name} {time}: {len(balance.names)} variables, {len(model.equations)} equations "
+                f"({balance.dependent_equations} dependent), {len(model.plant['tags'])} tags, "
+                f"{len(model.measurements) - len(model.plant['tags'])} soft givens, sum of squares "
+                f"{row['sum_of_squares']:.6f}, {row['degrees_of_freedom']} degrees of freedom, null directions "
+                f"{balance.null_directions}, {balance.iterations} iterations, residual {residual:.1e}, gaps "
+                f"{balance.singular_gap[0]:.0e}/{balance.singular_gap[1]:.0e} "
+                f"{balance.information_gap[0]:.0e}/{balance.information_gap[1]:.0e}"
+            )
         print("  unobservable:", ", ".join(rows[0]["unobservable"]) or "-")
-        how = (f"made by tests/oracle/reconcile.py: CasADi {casadi.__version__} with IPOPT (exact Hessian), Newton steps to a "
-               f"Karush-Kuhn-Tucker residual below 1e-9, dense singular value decomposition; IF97 coefficients out of "
-               f"the package iapws {iapws.__version__}. SI units. Enthalpy of a declared liquid is zero at 0 degC and 1.01325 bar.")
+        how = (
+            f"made by tests/oracle/reconcile.py: CasADi {casadi.__version__} with IPOPT (exact Hessian), Newton steps to "
+            "a Karush-Kuhn-Tucker residual below 1e-9, dense singular value decomposition; IF97 coefficients out of the "
+            f"package iapws {iapws.__version__}. SI units. The enthalpy of a declared liquid is zero at 0 degC and "
+            "1.01325 bar."
+        )
         store(PLANTS / "expected" / f"{name}.json", how, rows)
 
 
@@ -94,9 +105,9 @@ def store(path, how, rows):
     for row in rows:
         values = ",\n".join(f"    {json.dumps(name)}: {json.dumps(entry)}" for name, entry in row["values"].items())
         head = {key: row[key] for key in ("time", "sum_of_squares", "degrees_of_freedom", "unobservable")}
-        parts.append(f"  {json.dumps(head)[:-1]}, \"values\": {{\n{values}\n  }}}}")
+        parts.append(f'  {json.dumps(head)[:-1]}, "values": {{\n{values}\n  }}}}')
     path.parent.mkdir(exist_ok=True)
-    path.write_text(f"{{\n\"how\": {json.dumps(how)},\n\"rows\": [\n" + ",\n".join(parts) + "\n]\n}\n")
+    path.write_text(f'{{\n"how": {json.dumps(how)},\n"rows": [\n' + ",\n".join(parts) + "\n]\n}\n")
     json.loads(path.read_text())
 
 

@@ -104,3 +104,62 @@ fn drum_pressure(machine: &Machine, system: &mut System) -> u32 {
     let (dimension, role) = (Dimension::PRESSURE, VariableRole::Pressure);
     system.quantity(machine, "drum_pressure", dimension, role, Knowledge::Free)
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::equipment::rig::{Rig, near};
+    // Expected values here: iapws 1.5.5, an independent implementation of IAPWS-IF97 in Python; its forward equations,
+    // inverted by bisection.
+
+    fn reheat_boiler() -> Rig {
+        let mut rig = Rig::new(
+            "boiler",
+            &[
+                "feedwater",
+                "steam",
+                "blowdown",
+                "spray.main",
+                "reheat_inlet",
+                "reheat_outlet",
+                "reheat_spray.main",
+            ],
+        )
+        .build();
+        rig.flow("feedwater", 115.0, 180.0, 210.0);
+        rig.flow("spray.main", 5.0, 60.0, 150.0);
+        rig.flow("steam", 118.0, 140.0, 540.0);
+        rig.boiling("blowdown", 2.0, 150.0);
+        rig.flow("reheat_inlet", 100.0, 35.0, 340.0);
+        rig.flow("reheat_spray.main", 3.0, 60.0, 150.0);
+        rig.flow("reheat_outlet", 103.0, 32.0, 540.0);
+        rig
+    }
+
+    #[test]
+    fn the_duty_goes_to_both_circuits() {
+        let mut rig = reheat_boiler();
+        assert_eq!(rig.residual("steam circuit mass balance"), 0.0);
+        assert_eq!(rig.residual("reheat circuit mass balance"), 0.0);
+        near(rig.solve("energy balance", "machine.duty"), 356.53917965e6, 1e-9);
+        rig.set("machine.heat_loss", 1e6);
+        near(rig.solve("energy balance", "machine.duty"), 357.53917965e6, 1e-9);
+    }
+
+    #[test]
+    fn the_blowdown_leaves_as_saturated_liquid_at_drum_pressure() {
+        let mut rig = reheat_boiler();
+        near(rig.solve("pressure of blowdown", "machine.drum_pressure"), 150e5, 1e-12);
+        near(rig.quantity("drum_pressure_drop"), 10e5, 1e-9);
+        near(rig.solve("saturation of blowdown", "blowdown.temperature"), 615.307871249, 1e-9);
+    }
+
+    #[test]
+    fn half_a_reheater_is_a_fault() {
+        let rig = Rig::new("boiler", &["feedwater", "steam", "reheat_inlet"]);
+        let faults = rig.machine.kind.faults(&rig.machine, &rig.system);
+        assert_eq!(
+            faults,
+            ["`machine` (a boiler) has a stream at `reheat_inlet` but none at `reheat_outlet`"]
+        );
+    }
+}

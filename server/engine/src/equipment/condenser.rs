@@ -97,3 +97,50 @@ impl Kind for Condenser {
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::equipment::rig::{Rig, near};
+    use crate::plant::SettingValue;
+    // Expected values here: iapws 1.5.5, an independent implementation of IAPWS-IF97 in Python; its forward equations,
+    // inverted by bisection.
+
+    fn rig() -> Rig {
+        let ports = ["hot_inlet", "hot_outlet", "cold_inlet", "cold_outlet", "drain_inlet.heaters"];
+        let rig = Rig::new("condenser", &ports);
+        let mut rig = rig.setting("design_ua", SettingValue::Text("12 MW/K".into())).build();
+        rig.wet("hot_inlet", 60.0, 0.05, 0.92);
+        rig.flow("drain_inlet.heaters", 5.0, 0.05, 30.0);
+        rig.flow("hot_outlet", 65.0, 0.05, 32.0);
+        rig.flow("cold_inlet", 3204.1755204, 3.0, 15.0);
+        rig.flow("cold_outlet", 3204.1755204, 2.5, 25.0);
+        rig
+    }
+
+    #[test]
+    fn cooling_water_takes_what_steam_and_drains_give() {
+        let mut rig = rig();
+        assert_eq!(rig.residual("hot side mass balance"), 0.0);
+        near(rig.solve("hot side energy balance", "machine.duty"), 133.92735408e6, 1e-9);
+        near(rig.solve("cold side energy balance", "machine.duty"), 133.92735408e6, 1e-9);
+    }
+
+    /// Saturation at 0.05 bar: 306.02548952 K.
+    #[test]
+    fn the_steam_condenses_at_one_temperature() {
+        let mut rig = rig();
+        rig.set("machine.duty", 133.92735408e6);
+        near(rig.quantity("terminal_difference"), 7.87548952376, 1e-9);
+        near(rig.quantity("log_mean_difference"), 12.1999553709, 1e-9);
+        near(rig.quantity("ua"), 10.9776921313e6, 1e-9);
+        near(rig.quantity("effectiveness"), 0.55942523905, 1e-9);
+        near(rig.quantity("cleanliness"), 10.9776921313 / 12.0, 1e-9);
+    }
+
+    #[test]
+    fn without_a_design_there_is_no_cleanliness() {
+        let ports = ["hot_inlet", "hot_outlet", "cold_inlet", "cold_outlet"];
+        let mut rig = Rig::new("condenser", &ports).build();
+        assert!(rig.machine.kind.derive(&rig.machine, "cleanliness", &mut rig.system).is_none());
+    }
+}

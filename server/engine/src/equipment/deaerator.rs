@@ -91,3 +91,42 @@ pub(super) fn not_water(machine: &Machine, system: &System) -> Vec<String> {
         })
         .collect()
 }
+
+#[cfg(test)]
+mod tests {
+    use super::{Knowledge, PhaseHint};
+    use crate::equation::Held;
+    use crate::equipment::rig::{Rig, near};
+    // Expected values here: iapws 1.5.5, an independent implementation of IAPWS-IF97 in Python; its forward equations,
+    // inverted by bisection.
+
+    #[test]
+    fn steam_heats_the_condensate_to_saturation() {
+        let mut rig = Rig::new("deaerator", &["inlet.condensate", "inlet.steam", "outlet"]).build();
+        rig.flow("inlet.condensate", 100.0, 6.0, 120.0);
+        rig.flow("inlet.steam", 5.6145068034, 5.0, 300.0);
+        rig.boiling("outlet", 105.6145068034, 5.0);
+        assert!(rig.residual("energy balance").abs() < 100.0);
+        near(rig.solve("energy balance", "inlet.steam.mass_flow"), 5.6145068034, 1e-6);
+    }
+
+    #[test]
+    fn the_outlet_is_saturated_unless_given() {
+        let mut rig = Rig::new("deaerator", &["inlet.a", "outlet"]).build();
+        rig.boiling("outlet", 100.0, 5.0);
+        let subcooling = rig.system.find("machine.subcooling").unwrap();
+        assert_eq!(rig.system.variables[subcooling as usize].knowledge, Knowledge::Exact(0.0));
+        assert_eq!(rig.system.streams[rig.stream("outlet")].phase, Some(PhaseHint::Liquid));
+        let row = &rig.system.rows[rig.system.variables[subcooling as usize].defined_by.unwrap()];
+        let residual = |p: f64, t: f64| row.value(&[0.0, p, t], Held(&rig.forms)).unwrap();
+        assert!(residual(5e5, 424.9862438769).abs() < 1e-8);
+        near(residual(5e5, 420.0), 4.9862438769, 1e-8);
+    }
+
+    #[test]
+    fn a_stated_phase_stays() {
+        let mut rig = Rig::new("deaerator", &["inlet.a", "outlet"]);
+        rig.system.streams[1].phase = Some(PhaseHint::Mixture);
+        assert_eq!(rig.build().system.streams[1].phase, Some(PhaseHint::Mixture));
+    }
+}

@@ -39,3 +39,21 @@ impl Kind for Desuperheater {
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::equipment::rig::{Rig, near};
+    // Expected values here: iapws 1.5.5, an independent implementation of IAPWS-IF97 in Python; its forward equations,
+    // inverted by bisection.
+
+    /// From 500 to 400 degC at 40 bar with water of 150 degC.
+    #[test]
+    fn the_spray_follows_from_the_temperatures() {
+        let mut rig = Rig::new("desuperheater", &["inlet", "spray", "outlet"]).build();
+        rig.flow("inlet", 10.0, 40.0, 500.0);
+        rig.flow("spray", 0.8902300937438, 60.0, 150.0);
+        rig.flow("outlet", 10.8902300937438, 39.0, 400.0);
+        assert!(rig.residual("mass balance").abs() < 1e-12);
+        near(rig.solve("energy balance", "spray.mass_flow"), 0.8902300937, 1e-8);
+    }
+}

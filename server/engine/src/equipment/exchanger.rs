@@ -185,3 +185,68 @@ impl Equation for Effectiveness {
         Ok(x[0] * (hot_in - cold_in) - larger)
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::{EquationError, logarithmic_mean};
+    use crate::equipment::rig::{Rig, near};
+    use crate::plant::SettingValue;
+
+    fn oil_cooler(arrangement: &str) -> Rig {
+        let ports = ["hot_inlet", "hot_outlet", "cold_inlet", "cold_outlet"];
+        let rig = Rig::new("heat_exchanger", &ports);
+        let mut rig = rig.setting("arrangement", SettingValue::Text(arrangement.into())).build();
+        rig.flow("hot_inlet", 10.0, 5.0, 90.0);
+        rig.flow("hot_outlet", 10.0, 4.8, 50.0);
+        rig.flow("cold_inlet", 20.0, 3.0, 20.0);
+        rig.flow("cold_outlet", 20.0, 2.9, 40.0);
+        rig
+    }
+
+    /// 50 K and 30 K in counterflow: 20 / ln(5/3); 70 K and 10 K in parallel flow: 60 / ln 7.
+    #[test]
+    fn the_logarithmic_mean_follows_the_arrangement() {
+        near(oil_cooler("counterflow").quantity("log_mean_difference"), 20.0 / (5.0_f64 / 3.0).ln(), 1e-12);
+        near(oil_cooler("parallel").quantity("log_mean_difference"), 60.0 / 7.0_f64.ln(), 1e-12);
+    }
+
+    #[test]
+    fn the_hot_side_gives_what_the_cold_side_receives_and_the_loss() {
+        let mut rig = oil_cooler("counterflow");
+        let duty = rig.solve("cold side energy balance", "machine.duty");
+        let given = rig.solve("hot side energy balance", "machine.duty");
+        rig.set("machine.duty", duty);
+        near(rig.solve("hot side energy balance", "machine.heat_loss"), given - duty, 1e-6);
+        near(rig.quantity("ua"), duty * (5.0_f64 / 3.0).ln() / 20.0, 1e-12);
+        near(rig.quantity("hot_pressure_drop"), 0.2e5, 1e-9);
+        near(rig.quantity("cold_pressure_drop"), 0.1e5, 1e-9);
+    }
+
+    /// The hot side changes by 40 K, the cold one by 20 K, of 70 K at most.
+    #[test]
+    fn effectiveness_is_that_of_the_side_that_changes_more() {
+        let mut rig = oil_cooler("counterflow");
+        near(rig.quantity("effectiveness"), 40.0 / 70.0, 1e-12);
+        rig.set("cold_outlet.temperature", 75.0 + 273.15);
+        near(rig.quantity("effectiveness"), 55.0 / 70.0, 1e-12);
+    }
+
+    /// With e = (a - b)/(a + b) the mean is (a + b)/2 over artanh(e)/e = 1 + e^2/3 + e^4/5 + ..., here summed to e^20.
+    #[test]
+    fn the_logarithmic_mean_is_smooth_through_equal_differences() {
+        for unevenness in [0.0, 1e-12, 1e-6, 0.009999, 0.010001, 0.02, -0.009999, -0.010001] {
+            let (a, b): (f64, f64) = (20.0 * (1.0 + unevenness), 20.0 * (1.0 - unevenness));
+            let e = (a - b) / (a + b);
+            let inverse: f64 = (0..=10).map(|n| e.powi(2 * n) / f64::from(2 * n + 1)).sum();
+            near(logarithmic_mean(a, b).unwrap(), (a + b) / 2.0 / inverse, 1e-14);
+        }
+        near(logarithmic_mean(-60.0, -30.0).unwrap(), -30.0 / 2.0_f64.ln(), 1e-14);
+    }
+
+    #[test]
+    fn differences_of_opposite_sign_have_no_logarithmic_mean() {
+        for (a, b) in [(10.0, -1.0), (-1.0, 10.0), (0.0, 10.0), (f64::NAN, 1.0)] {
+            assert!(matches!(logarithmic_mean(a, b), Err(EquationError::Undefined(_))), "{a} {b}");
+        }
+    }
+}

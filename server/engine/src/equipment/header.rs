@@ -44,3 +44,27 @@ pub(super) fn share_enthalpy(machine: &Machine, system: &mut System) {
         system.equal(machine, &format!("enthalpy of {}", other.name()), h_other, h_first);
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::equipment::rig::Rig;
+
+    /// The mean of the inlets' enthalpies, weighted by their flows, leaves at both outlets.
+    #[test]
+    fn outlets_share_the_state_of_the_mix() {
+        let mut rig = Rig::new("header", &["inlet.a", "inlet.b", "outlet.a", "outlet.b"]).build();
+        rig.flow("inlet.a", 6.0, 20.0, 300.0);
+        rig.flow("inlet.b", 2.0, 20.0, 400.0);
+        rig.flow("outlet.a", 5.0, 19.5, 320.0);
+        rig.flow("outlet.b", 3.0, 19.5, 320.0);
+        for row in ["mass balance", "pressure of outlet.b", "enthalpy of outlet.b"] {
+            assert_eq!(rig.residual(row), 0.0, "{row}");
+        }
+        assert_eq!(rig.system.rows.iter().filter(|row| row.name().starts_with("machine")).count(), 4);
+        let [one, other] = ["inlet.a", "inlet.b"].map(|port| rig.get(&format!("{port}.enthalpy")));
+        for port in ["outlet.a", "outlet.b"] {
+            rig.set(&format!("{port}.enthalpy"), 0.75 * one + 0.25 * other);
+        }
+        assert!(rig.residual("energy balance").abs() < 1e-7);
+    }
+}

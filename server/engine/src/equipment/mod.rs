@@ -34,6 +34,11 @@ pub(crate) mod guess;
 mod machine;
 mod system;
 
+#[cfg(test)]
+mod rig;
+#[cfg(test)]
+mod tests;
+
 pub use guess::Guess;
 pub(crate) use guess::{guess_phase, region_of};
 pub use machine::{Connection, Machine};

@@ -56,3 +56,31 @@ pub(super) fn convert(machine: &Machine, system: &mut System, taken: &str, made:
 pub(super) fn efficiency(machine: &Machine, system: &mut System) -> u32 {
     system.quantity(machine, "efficiency", Dimension::RATIO, VariableRole::Ratio, Knowledge::Exact(1.0))
 }
+
+#[cfg(test)]
+mod tests {
+    use super::Knowledge;
+    use crate::equipment::rig::{Rig, near};
+
+    #[test]
+    fn a_motor_loses_on_the_way_to_the_shaft_and_a_generator_on_the_way_to_the_terminals() {
+        for (kind, taken, made) in
+            [("motor", "electric_power", "power"), ("generator", "power", "electric_power")]
+        {
+            let mut rig = Rig::new(kind, &[]).build();
+            rig.set(&format!("machine.{taken}"), 10e6);
+            let made = format!("machine.{made}");
+            near(rig.solve("conversion of power", &made), 10e6, 1e-12);
+            rig.set("machine.efficiency", 0.96);
+            near(rig.solve("conversion of power", &made), 9.6e6, 1e-12);
+        }
+    }
+
+    #[test]
+    fn a_gearbox_passes_everything_on_unless_given() {
+        let rig = Rig::new("gearbox", &[]).build();
+        let efficiency = rig.system.find("machine.efficiency").unwrap();
+        assert_eq!(rig.system.variables[efficiency as usize].knowledge, Knowledge::Exact(1.0));
+        assert!(rig.system.rows.is_empty());
+    }
+}

@@ -80,3 +80,31 @@ impl Kind for Pump {
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::equipment::rig::{Rig, near};
+    // Expected values here: iapws 1.5.5, an independent implementation of IAPWS-IF97 in Python; its forward equations,
+    // inverted by bisection.
+
+    #[test]
+    fn a_feed_pump_takes_the_power_that_its_water_gains() {
+        let mut rig = Rig::new("pump", &["inlet", "outlet"]).build();
+        rig.flow("inlet", 100.0, 7.0, 160.0);
+        rig.flow("outlet", 100.0, 180.0, 163.0);
+        near(rig.solve("energy balance", "machine.power"), 2.3163031725e6, 1e-8);
+        near(rig.quantity("efficiency"), 0.81933999637, 1e-7);
+        near(rig.quantity("pressure_rise"), 173e5, 1e-12);
+        near(rig.quantity("pressure_ratio"), 180.0 / 7.0, 1e-12);
+    }
+
+    #[test]
+    fn an_extraction_takes_its_share() {
+        let mut rig = Rig::new("pump", &["inlet", "outlet", "extraction.spray"]).build();
+        rig.flow("inlet", 100.0, 7.0, 160.0);
+        rig.flow("outlet", 90.0, 180.0, 163.0);
+        rig.flow("extraction.spray", 10.0, 180.0, 163.0);
+        assert_eq!(rig.residual("mass balance"), 0.0);
+        near(rig.solve("energy balance", "machine.power"), 2.3163031725e6, 1e-8);
+    }
+}

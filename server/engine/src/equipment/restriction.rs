@@ -56,3 +56,28 @@ impl Equation for LossCoefficient {
         Ok(x[0] * dynamic_pressure - (x[1] - x[5]))
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::equipment::rig::{Rig, near};
+    // Expected values here: iapws 1.5.5, an independent implementation of IAPWS-IF97 in Python; its forward equations,
+    // inverted by bisection.
+
+    #[test]
+    fn steam_is_throttled_at_constant_enthalpy() {
+        let mut rig = Rig::new("valve", &["inlet", "outlet"]).area("inlet", 0.02).build();
+        rig.flow("inlet", 8.0, 20.0, 300.0);
+        rig.flow("outlet", 8.0, 5.0, 553.622375777 - 273.15);
+        // Kinetic energy at the inlet counts as its area is stated.
+        rig.set("inlet.velocity", 0.0);
+        assert!(rig.residual("energy balance").abs() < 8.0 * 0.01);
+        near(rig.quantity("pressure_drop"), 15e5, 1e-12);
+        near(rig.quantity("loss_coefficient"), 149.400988183, 1e-8);
+    }
+
+    #[test]
+    fn without_an_area_there_is_no_loss_coefficient() {
+        let mut rig = Rig::new("pipe", &["inlet", "outlet"]).build();
+        assert!(rig.machine.kind.derive(&rig.machine, "loss_coefficient", &mut rig.system).is_none());
+    }
+}

@@ -34,3 +34,28 @@ impl Kind for Splitter {
         }
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::equipment::rig::Rig;
+
+    #[test]
+    fn outlets_have_the_inlets_state() {
+        let mut rig = Rig::new("splitter", &["inlet", "outlet.a", "outlet.b"]).build();
+        rig.flow("inlet", 10.0, 20.0, 300.0);
+        rig.flow("outlet.a", 7.0, 20.0, 300.0);
+        rig.flow("outlet.b", 3.0, 20.0, 300.0);
+        for row in [
+            "mass balance",
+            "energy balance",
+            "pressure of outlet.a",
+            "pressure of outlet.b",
+            "enthalpy of outlet.b",
+        ] {
+            assert!(rig.residual(row).abs() < 1e-8, "{row}");
+        }
+        assert_eq!(rig.system.rows.iter().filter(|row| row.name().starts_with("machine")).count(), 5);
+        rig.set("outlet.b.enthalpy", 3.0e6);
+        assert!(rig.residual("enthalpy of outlet.b").abs() > 1e3);
+    }
+}

@@ -104,6 +104,11 @@ pub struct System {
 }
 
 impl System {
+    /// A system over these streams, in which nothing takes part yet.
+    pub fn over(streams: Vec<StreamData>) -> Self {
+        Self { streams, ..Self::default() }
+    }
+
     /// The variable of this name, if it takes part.
     pub fn find(&self, name: &str) -> Option<u32> {
         self.index.get(name).copied()

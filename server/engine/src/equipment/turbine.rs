@@ -176,3 +176,96 @@ fn end_enthalpy(machine: &Machine, end: &Connection, system: &mut System) -> u32
 fn is_admission(connection: &Connection) -> bool {
     connection.port.name == "admission"
 }
+
+#[cfg(test)]
+mod tests {
+    use crate::equation::{EquationError, Held};
+    use crate::equipment::rig::{Rig, near};
+    use crate::plant::{Located, SettingValue, Span};
+    // Expected values here: iapws 1.5.5, an independent implementation of IAPWS-IF97 in Python; its forward equations,
+    // inverted by bisection.
+
+    fn with_extraction() -> Rig {
+        let mut rig = Rig::new("turbine", &["inlet", "extraction.a", "outlet"]).build();
+        rig.flow("inlet", 100.0, 100.0, 500.0);
+        rig.flow("extraction.a", 20.0, 20.0, 300.0);
+        rig.wet("outlet", 80.0, 0.1, 0.9);
+        rig
+    }
+
+    #[test]
+    fn power_is_what_the_steam_leaves_behind() {
+        let mut rig = with_extraction();
+        assert_eq!(rig.residual("mass balance"), 0.0);
+        near(rig.solve("energy balance", "machine.power"), 89.44644883e6, 1e-9);
+        rig.set("machine.heat_loss", 0.4e6);
+        near(rig.solve("energy balance", "machine.power"), 89.04644883e6, 1e-9);
+    }
+
+    #[test]
+    fn each_section_has_its_efficiency_and_flow_coefficient() {
+        let mut rig = with_extraction();
+        near(rig.quantity("efficiency.extraction.a"), 0.78940568199, 1e-8);
+        near(rig.quantity("efficiency.a"), 0.78940568199, 1e-8);
+        near(rig.quantity("efficiency.outlet"), 0.77167463676, 1e-8);
+        near(rig.quantity("flow_coefficient.a"), 0.005846372001, 1e-8);
+        near(rig.quantity("flow_coefficient.outlet"), 0.020040304631, 1e-8);
+        assert!(rig.machine.kind.derive(&rig.machine, "efficiency", &mut rig.system).is_none());
+        assert!(rig.system.find("machine.efficiency.a").is_none(), "one name for one section");
+    }
+
+    #[test]
+    fn a_turbine_without_sections_has_one_efficiency() {
+        let mut rig = Rig::new("turbine", &["inlet", "outlet"]).build();
+        rig.flow("inlet", 100.0, 100.0, 500.0);
+        rig.wet("outlet", 100.0, 0.1, 0.9);
+        near(rig.quantity("efficiency"), 0.8015905279, 1e-8);
+        assert!(rig.system.find("machine.efficiency.outlet").is_none());
+    }
+
+    /// 50 kg/s that arrive with 2950 kJ/kg mix with 10 kg/s at 10 bar and 250 degC.
+    #[test]
+    fn the_section_after_an_admission_starts_from_the_mix() {
+        let mut rig = Rig::new("turbine", &["inlet", "extraction.x", "admission.a", "outlet"]).build();
+        rig.flow("inlet", 70.0, 100.0, 500.0);
+        rig.flow("extraction.x", 20.0, 20.0, 300.0);
+        rig.flow("admission.a", 10.0, 10.0, 250.0);
+        rig.flow("outlet", 60.0, 3.0, 160.0);
+        rig.set("machine.enthalpy_before.admission.a", 2.95e6);
+        near(rig.quantity("efficiency.a"), 0.461480433508, 1e-8);
+        near(rig.quantity("efficiency.outlet"), 0.67588736984, 1e-8);
+        near(rig.quantity("flow_coefficient.outlet"), 0.030429217331, 1e-8);
+        let hidden = rig.system.find("machine.enthalpy_before.admission.a").unwrap();
+        assert!(!rig.system.variables[hidden as usize].listed);
+    }
+
+    #[test]
+    fn sections_follow_the_stated_order() {
+        let located = |value| Located { value, span: Span::default() };
+        let list = ["b", "a"].map(|name| located(SettingValue::Text(name.into())));
+        let rig = Rig::new("turbine", &["extraction.a", "outlet", "inlet", "extraction.b"]);
+        let names =
+            |rig: &Rig| super::order(&rig.machine).unwrap().iter().map(|c| c.name()).collect::<Vec<_>>();
+        assert_eq!(names(&rig), ["inlet", "extraction.a", "extraction.b", "outlet"]);
+        let rig = rig.setting("sections", SettingValue::List(list.to_vec()));
+        assert_eq!(names(&rig), ["inlet", "extraction.b", "extraction.a", "outlet"]);
+    }
+
+    #[test]
+    fn a_suffix_that_two_ports_share_is_no_name() {
+        let mut rig = Rig::new("turbine", &["inlet", "extraction.a", "admission.a", "outlet"]).build();
+        assert!(rig.machine.kind.derive(&rig.machine, "efficiency.a", &mut rig.system).is_none());
+        assert!(rig.machine.kind.derive(&rig.machine, "efficiency.extraction.a", &mut rig.system).is_some());
+    }
+
+    #[test]
+    fn pressures_that_rise_have_no_flow_coefficient() {
+        let mut rig = with_extraction();
+        let coefficient = rig.quantity("flow_coefficient.a");
+        rig.set("machine.flow_coefficient.extraction.a", coefficient);
+        rig.flow("extraction.a", 20.0, 120.0, 510.0);
+        let row = rig.system.rows.last().unwrap();
+        let undefined = row.value(&rig.locals(row), Held(&rig.forms));
+        assert!(matches!(undefined, Err(EquationError::Undefined(_))), "{undefined:?}");
+    }
+}

@@ -61,6 +61,7 @@ def main():
     true = truth(name)
     model = Model(PLANTS / f"{name}.toml", targets=designs.TARGETS[name], starts=designs.STARTS[name])
     tags = model.plant["tags"]
+    true.setdefault("surroundings.pressure", model.ambient)
     shown = {tag: in_unit(entry, true) for tag, entry in tags.items()}
     if "--typical" in sys.argv:
         write_typical(PLANTS / f"{name}.toml", tags, shown)

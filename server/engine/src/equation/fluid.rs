@@ -1,9 +1,9 @@
 //! Fluid states as equations: which formula a stream holds during a solve, and the rows made of it.
 
+use meterwright_thermo::Partial;
 use meterwright_thermo::Scalar;
 use meterwright_thermo::liquid::Liquid;
 use meterwright_thermo::water::saturation::{self, AlongSaturation};
-use meterwright_thermo::Partial;
 use meterwright_thermo::water::{self, Region};
 
 use super::{Equation, EquationError};
@@ -55,6 +55,9 @@ impl StreamFluid {
     }
 
     /// Specific volume, m3/kg.
+    ///
+    /// # Errors
+    /// [`EquationError`] outside the range of the fluid's formulas.
     pub fn volume<S: Scalar>(&self, held: Held<'_>, p: S, t: S, h: S) -> Result<S, EquationError> {
         if let FluidKind::Liquid { density, .. } = self.fluid {
             return Ok(S::constant(1.0 / density));
@@ -70,6 +73,9 @@ impl StreamFluid {
     }
 
     /// Specific entropy, J/(kg K).
+    ///
+    /// # Errors
+    /// [`EquationError`] outside the range of the fluid's formulas.
     pub fn entropy<S: Scalar>(&self, held: Held<'_>, p: S, t: S, h: S) -> Result<S, EquationError> {
         if let FluidKind::Liquid { density, specific_heat } = self.fluid {
             let liquid = Liquid::new(density, specific_heat)?;
@@ -86,6 +92,9 @@ impl StreamFluid {
     }
 
     /// Specific enthalpy at a pressure and an entropy, whatever the phase there.
+    ///
+    /// # Errors
+    /// [`EquationError`] outside the range of the fluid's formulas.
     pub fn enthalpy_at_entropy<S: Scalar>(&self, p: S, s: S) -> Result<S, EquationError> {
         if let FluidKind::Liquid { density, specific_heat } = self.fluid {
             let partial = Liquid::new(density, specific_heat)?.enthalpy_ps(p.value(), s.value())?;
@@ -121,6 +130,9 @@ impl StreamFluid {
     }
 
     /// Temperature at a pressure and an enthalpy, whatever the phase there.
+    ///
+    /// # Errors
+    /// [`EquationError`] outside the range of the fluid's formulas.
     pub fn temperature_at_enthalpy<S: Scalar>(&self, p: S, h: S) -> Result<S, EquationError> {
         if let FluidKind::Liquid { density, specific_heat } = self.fluid {
             let partial = Liquid::new(density, specific_heat)?.temperature_ph(p.value(), h.value())?;
@@ -132,6 +144,9 @@ impl StreamFluid {
 }
 
 /// Saturation temperature of water, K.
+///
+/// # Errors
+/// [`EquationError`] outside the saturation line.
 pub fn saturation_temperature<S: Scalar>(p: S) -> Result<S, EquationError> {
     let (value, slope) = saturation::temperature(p.value())?;
     Ok(p.lift1(value, slope))

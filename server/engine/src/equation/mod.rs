@@ -6,7 +6,10 @@ mod fluid;
 mod law;
 
 pub use balance::{EnergyBalance, GRAVITY, Linear, StreamTerm};
-pub use fluid::{AtSaturation, EntropyOf, Form, Held, Makes, PropertyRow, QualityOf, SaturationOf, StagnationPressure, StagnationTemperature, StreamFluid, VolumeOf, saturation_temperature};
+pub use fluid::{
+    AtSaturation, EntropyOf, Form, Held, Makes, PropertyRow, QualityOf, SaturationOf, StagnationPressure,
+    StagnationTemperature, StreamFluid, VolumeOf, saturation_temperature,
+};
 pub use law::{Difference, Product, Quotient};
 
 use meterwright_thermo::liquid::LiquidError;

@@ -238,7 +238,7 @@ mod tests {
             let (a, b): (f64, f64) = (20.0 * (1.0 + unevenness), 20.0 * (1.0 - unevenness));
             let e = (a - b) / (a + b);
             let inverse: f64 = (0..=10).map(|n| e.powi(2 * n) / f64::from(2 * n + 1)).sum();
-            near(logarithmic_mean(a, b).unwrap(), (a + b) / 2.0 / inverse, 1e-14);
+            near(logarithmic_mean(a, b).unwrap(), a.midpoint(b) / inverse, 1e-14);
         }
         near(logarithmic_mean(-60.0, -30.0).unwrap(), -30.0 / 2.0_f64.ln(), 1e-14);
     }

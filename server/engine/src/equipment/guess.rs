@@ -35,7 +35,8 @@ impl<'a> Guess<'a> {
                 break;
             }
         }
-        let fill = |values: Vec<Option<f64>>, other: f64| values.into_iter().map(|v| v.unwrap_or(other)).collect();
+        let fill =
+            |values: Vec<Option<f64>>, other: f64| values.into_iter().map(|v| v.unwrap_or(other)).collect();
         (fill(self.pressure, surroundings.0), fill(self.temperature, surroundings.1))
     }
 
@@ -101,7 +102,7 @@ impl<'a> Guess<'a> {
     /// Carries pressures across each side.
     pub fn even_out_pressures(&mut self, machine: &Machine) {
         for side in 0..machine.sides() {
-            self.level_pressures(&self.of_side(machine, side));
+            self.level_pressures(&of_side(machine, side));
         }
     }
 
@@ -114,22 +115,22 @@ impl<'a> Guess<'a> {
 
     fn level_pressures(&mut self, streams: &[usize]) {
         if let Some(mean) = mean(streams.iter().filter_map(|stream| self.pressure[*stream])) {
-            streams.iter().for_each(|stream| self.set_pressure(*stream, mean));
+            for stream in streams {
+                self.set_pressure(*stream, mean);
+            }
         }
     }
 
     /// Carries temperatures across each side.
     pub fn even_out_temperatures(&mut self, machine: &Machine) {
         for side in 0..machine.sides() {
-            let streams = self.of_side(machine, side);
+            let streams = of_side(machine, side);
             if let Some(mean) = mean(streams.iter().filter_map(|stream| self.temperature[*stream])) {
-                streams.iter().for_each(|stream| self.set_temperature(*stream, mean));
+                for stream in streams {
+                    self.set_temperature(stream, mean);
+                }
             }
         }
-    }
-
-    fn of_side(&self, machine: &Machine, side: usize) -> Vec<usize> {
-        machine.side(side, Flow::In).chain(machine.side(side, Flow::Out)).collect()
     }
 
     /// Expands steam through a turbine whose streams lie in this order along the expansion.
@@ -160,9 +161,9 @@ impl<'a> Guess<'a> {
             .collect();
         for pair in known.windows(2) {
             let [(from, high), (to, low)] = [pair[0], pair[1]];
-            for place in from + 1..to {
-                let share = (place - from) as f64 / (to - from) as f64;
-                self.set_pressure(order[place], high * (low / high).powf(share));
+            for (step, stream) in order[from + 1..to].iter().enumerate() {
+                let share = (step + 1) as f64 / (to - from) as f64;
+                self.set_pressure(*stream, high * (low / high).powf(share));
             }
         }
         if !self.desperate {
@@ -171,7 +172,9 @@ impl<'a> Guess<'a> {
         match known.as_slice() {
             [] => {}
             [(place, pressure)] if *place == 0 => {
-                order[1..].iter().for_each(|stream| self.set_pressure(*stream, 0.3 * pressure));
+                for stream in &order[1..] {
+                    self.set_pressure(*stream, 0.3 * pressure);
+                }
             }
             all => {
                 for stream in order {
@@ -207,7 +210,8 @@ impl<'a> Guess<'a> {
     /// Two streams of one enthalpy, such as those round a valve: what is known of one gives the other's temperature.
     pub fn level_enthalpies(&mut self, one: usize, other: usize) {
         for (from, to) in [(one, other), (other, one)] {
-            let (Some(p), Some(t), Some(p_to)) = (self.pressure[from], self.temperature[from], self.pressure[to])
+            let (Some(p), Some(t), Some(p_to)) =
+                (self.pressure[from], self.temperature[from], self.pressure[to])
             else {
                 continue;
             };
@@ -224,7 +228,7 @@ impl<'a> Guess<'a> {
 }
 
 /// Which phase a water stream is taken to have at a guessed state.
-pub fn guess_phase(stream: &StreamData, pressure: f64, temperature: f64) -> PhaseHint {
+pub(crate) fn guess_phase(stream: &StreamData, pressure: f64, temperature: f64) -> PhaseHint {
     if let Some(stated) = stream.phase {
         return stated;
     }
@@ -241,13 +245,17 @@ pub fn guess_phase(stream: &StreamData, pressure: f64, temperature: f64) -> Phas
 const NEAR_SATURATION: f64 = 4.0;
 
 /// The IF97 region whose formula a phase takes at a state.
-pub fn region_of(phase: PhaseHint, pressure: f64, temperature: f64) -> Option<Region> {
+pub(crate) fn region_of(phase: PhaseHint, pressure: f64, temperature: f64) -> Option<Region> {
     let phase = match phase {
         PhaseHint::Liquid => Phase::Liquid,
         PhaseHint::Vapour => Phase::Vapour,
         PhaseHint::Mixture => return None,
     };
     Region::of_phase(phase, pressure, temperature).ok()
+}
+
+fn of_side(machine: &Machine, side: usize) -> Vec<usize> {
+    machine.side(side, Flow::In).chain(machine.side(side, Flow::Out)).collect()
 }
 
 fn mean(values: impl Iterator<Item = f64>) -> Option<f64> {

@@ -17,7 +17,11 @@ pub struct Connection {
 impl Connection {
     /// Port and suffix as written.
     pub fn name(&self) -> String {
-        if self.suffix.is_empty() { self.port.name.to_owned() } else { format!("{}.{}", self.port.name, self.suffix) }
+        if self.suffix.is_empty() {
+            self.port.name.to_owned()
+        } else {
+            format!("{}.{}", self.port.name, self.suffix)
+        }
     }
 }
 
@@ -63,25 +67,29 @@ impl Machine {
 
     /// A setting that is a word.
     pub fn word(&self, key: &str) -> Option<&str> {
-        self.settings.iter().find(|setting| setting.key.value == key).and_then(|setting| match &setting.value.value {
-            SettingValue::Text(text) => Some(text.as_str()),
-            _ => None,
+        self.settings.iter().find(|setting| setting.key.value == key).and_then(|setting| {
+            match &setting.value.value {
+                SettingValue::Text(text) => Some(text.as_str()),
+                _ => None,
+            }
         })
     }
 
     /// A setting that is a list of words.
     pub fn words(&self, key: &str) -> Option<Vec<&str>> {
-        self.settings.iter().find(|setting| setting.key.value == key).and_then(|setting| match &setting.value.value {
-            SettingValue::List(items) => Some(
-                items
-                    .iter()
-                    .filter_map(|item| match &item.value {
-                        SettingValue::Text(text) => Some(text.as_str()),
-                        _ => None,
-                    })
-                    .collect(),
-            ),
-            _ => None,
+        self.settings.iter().find(|setting| setting.key.value == key).and_then(|setting| {
+            match &setting.value.value {
+                SettingValue::List(items) => Some(
+                    items
+                        .iter()
+                        .filter_map(|item| match &item.value {
+                            SettingValue::Text(text) => Some(text.as_str()),
+                            _ => None,
+                        })
+                        .collect(),
+                ),
+                _ => None,
+            }
         })
     }
 

@@ -114,16 +114,19 @@ impl Port {
     }
 
     /// The same port, which may stay unconnected.
+    #[must_use]
     pub const fn optional(self) -> Self {
         Self { required: false, ..self }
     }
 
     /// The same port on another side.
+    #[must_use]
     pub const fn on_side(self, side: usize) -> Self {
         Self { side, ..self }
     }
 
     /// The same port with a likely phase.
+    #[must_use]
     pub const fn likely(self, phase: PhaseHint) -> Self {
         Self { likely: Some(phase), ..self }
     }

@@ -4,8 +4,8 @@ use std::collections::HashMap;
 
 use super::{Flow, Machine};
 use crate::equation::{
-    Difference, EnergyBalance, EntropyOf, Equation, GRAVITY, Linear, Makes, PropertyRow, QualityOf, Row, RowRole,
-    StagnationPressure, StagnationTemperature, StreamFluid, StreamTerm, VolumeOf,
+    Difference, EnergyBalance, EntropyOf, Equation, GRAVITY, Linear, Makes, PropertyRow, QualityOf, Row,
+    RowRole, StagnationPressure, StagnationTemperature, StreamFluid, StreamTerm, VolumeOf,
 };
 use crate::plant::{FluidKind, PhaseHint};
 use crate::quantity::Dimension;
@@ -57,6 +57,8 @@ pub struct VariableData {
     pub listed: bool,
     /// The row that only defines it, if one does.
     pub defined_by: Option<usize>,
+    /// The absolute pressure that it is the gauge pressure of.
+    pub gauge_of: Option<u32>,
 }
 
 /// A stream of the problem.
@@ -86,7 +88,7 @@ pub struct StreamData {
     pub enthalpy: Option<u32>,
 }
 
-/// Pressure limits of IAPWS-IF97, Pa: the triple point and 100 MPa. A balanced pressure outside is impossible.
+/// Pressure limits of IAPWS-IF97, Pa: the triple point and 1000 bar. A balanced pressure outside is impossible.
 const PRESSURE_LIMITS: (f64, f64) = (611.657, 100e6);
 /// Temperature limits of IAPWS-IF97, K.
 const TEMPERATURE_LIMITS: (f64, f64) = (273.15, 2273.15);
@@ -115,7 +117,13 @@ impl System {
     }
 
     /// The variable of this name, made if it is new.
-    pub fn variable(&mut self, name: &str, dimension: Dimension, role: VariableRole, knowledge: Knowledge) -> u32 {
+    pub fn variable(
+        &mut self,
+        name: &str,
+        dimension: Dimension,
+        role: VariableRole,
+        knowledge: Knowledge,
+    ) -> u32 {
         if let Some(found) = self.find(name) {
             return found;
         }
@@ -135,6 +143,7 @@ impl System {
             knowledge,
             listed: true,
             defined_by: None,
+            gauge_of: None,
         });
         id
     }
@@ -162,7 +171,13 @@ impl System {
     }
 
     /// A row that constrains the state.
-    pub fn law(&mut self, machine: &Machine, what: &str, variables: Vec<u32>, equation: impl Equation + 'static) {
+    pub fn law(
+        &mut self,
+        machine: &Machine,
+        what: &str,
+        variables: Vec<u32>,
+        equation: impl Equation + 'static,
+    ) {
         self.rows.push(Row::new(format!("{}: {what}", machine.name), RowRole::Law, variables, equation));
     }
 
@@ -217,7 +232,13 @@ impl System {
         self.law(machine, what, vec![a, b], Linear::new(vec![1.0, -1.0]));
     }
 
-    fn stream_variable(&mut self, stream: usize, quantity: &str, dimension: Dimension, role: VariableRole) -> u32 {
+    fn stream_variable(
+        &mut self,
+        stream: usize,
+        quantity: &str,
+        dimension: Dimension,
+        role: VariableRole,
+    ) -> u32 {
         let name = format!("{}.{quantity}", self.streams[stream].name);
         self.variable(&name, dimension, role, Knowledge::Free)
     }
@@ -250,7 +271,8 @@ impl System {
         if let Some(id) = self.streams[stream].temperature {
             return id;
         }
-        let id = self.stream_variable(stream, "temperature", Dimension::TEMPERATURE, VariableRole::Temperature);
+        let id =
+            self.stream_variable(stream, "temperature", Dimension::TEMPERATURE, VariableRole::Temperature);
         self.streams[stream].temperature = Some(id);
         id
     }
@@ -326,7 +348,13 @@ impl System {
         }
         let name = format!("{}.stagnation_temperature", self.streams[stream].name);
         let (dimension, role) = (Dimension::TEMPERATURE, VariableRole::Temperature);
-        Some(self.define_named(&name, dimension, role, &[pressure, h, velocity], StagnationTemperature(fluid)))
+        Some(self.define_named(
+            &name,
+            dimension,
+            role,
+            &[pressure, h, velocity],
+            StagnationTemperature(fluid),
+        ))
     }
 
     /// Velocity of a stream with a stated area.
@@ -438,7 +466,10 @@ impl System {
         }
         let carries_losses = sides.contains(&0);
         if carries_losses {
-            variables.extend([self.zero_power(machine, "heat_loss"), self.zero_power(machine, "unaccounted_heat")]);
+            variables.extend([
+                self.zero_power(machine, "heat_loss"),
+                self.zero_power(machine, "unaccounted_heat"),
+            ]);
             signs.extend([-1.0, -1.0]);
         }
         let loss = carries_losses && machine.closes_mass && first_outlet.is_some();

@@ -40,9 +40,13 @@ fn rig_of(kind: &dyn Kind, ports: Ports) -> Rig {
         .ports()
         .iter()
         .filter(connected)
-        .flat_map(|port| match port.many {
-            true => ["a", "b"].map(|suffix| format!("{}.{}{suffix}", port.name, &port.name[..1])).to_vec(),
-            false => vec![port.name.to_owned()],
+        .flat_map(|port| {
+            let suffixes: &[&str] = if port.many { &[".a", ".b"] } else { &[""] };
+            // A suffix is told by its port's first letter, so that no two ports share one.
+            suffixes.iter().map(|suffix| match *suffix {
+                "" => port.name.to_owned(),
+                suffix => format!("{}{suffix}{}", port.name, &port.name[..1]),
+            })
         })
         .collect();
     let names: Vec<&str> = names.iter().map(String::as_str).collect();

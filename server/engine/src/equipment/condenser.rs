@@ -143,4 +143,15 @@ mod tests {
         let mut rig = Rig::new("condenser", &ports).build();
         assert!(rig.machine.kind.derive(&rig.machine, "cleanliness", &mut rig.system).is_none());
     }
+
+    /// Saturation at 29 degC, 4 K above the cooling water: 0.0401 bar.
+    #[test]
+    fn a_guess_finds_the_vacuum_from_the_cooling_water() {
+        let known = [("cold_inlet", 3.0, 15.0), ("cold_outlet", f64::NAN, 25.0)];
+        let (bar, celsius) = rig().guessed(&known, "hot_inlet");
+        near(bar, 0.0400891693474, 1e-9);
+        near(celsius, 29.0, 1e-8);
+        near(rig().guessed(&known, "hot_outlet").1, 29.0, 1e-8);
+        near(rig().guessed(&known, "cold_outlet").0, 3.0, 1e-12);
+    }
 }

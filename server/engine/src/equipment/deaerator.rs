@@ -129,4 +129,13 @@ mod tests {
         rig.system.streams[1].phase = Some(PhaseHint::Mixture);
         assert_eq!(rig.build().system.streams[1].phase, Some(PhaseHint::Mixture));
     }
+
+    #[test]
+    fn a_guess_saturates_the_outlet_from_either_reading() {
+        let rig = Rig::new("deaerator", &["inlet.a", "outlet"]).build();
+        let (_, celsius) = rig.guessed(&[("outlet", 5.0, f64::NAN)], "outlet");
+        near(celsius, 424.9862438769 - 273.15, 1e-9);
+        let (bar, _) = rig.guessed(&[("outlet", f64::NAN, 424.9862438769 - 273.15)], "outlet");
+        near(bar, 5.0, 1e-8);
+    }
 }

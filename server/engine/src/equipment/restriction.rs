@@ -80,4 +80,13 @@ mod tests {
         let mut rig = Rig::new("pipe", &["inlet", "outlet"]).build();
         assert!(rig.machine.kind.derive(&rig.machine, "loss_coefficient", &mut rig.system).is_none());
     }
+
+    #[test]
+    fn a_guess_throttles_at_constant_enthalpy() {
+        let rig = Rig::new("valve", &["inlet", "outlet"]).build();
+        let (_, celsius) = rig.guessed(&[("inlet", 20.0, 300.0), ("outlet", 5.0, f64::NAN)], "outlet");
+        near(celsius, 553.622375777 - 273.15, 1e-8);
+        let (_, celsius) = rig.guessed(&[("outlet", 5.0, 280.472375777), ("inlet", 20.0, f64::NAN)], "inlet");
+        near(celsius, 300.0, 1e-8);
+    }
 }

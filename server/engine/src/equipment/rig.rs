@@ -4,7 +4,7 @@ use std::collections::HashMap;
 
 use meterwright_thermo::water::{Region, saturation};
 
-use super::{Connection, Knowledge, Machine, StreamData, System, find};
+use super::{Connection, Guess, Knowledge, Machine, StreamData, System, find};
 use crate::equation::{Form, Held, Row, StreamFluid};
 use crate::plant::{FluidKind, Located, Setting, SettingValue, Span};
 
@@ -122,6 +122,20 @@ impl Rig {
             (_, Some(row)) => self.solve_row(&self.system.rows[row], id),
             _ => panic!("{} has no value", variable.name),
         }
+    }
+
+    /// What the start of a solve makes of the states (bar, degC) that are known at some ports, NaN being unknown: the
+    /// state at one of the ports.
+    pub(super) fn guessed(&self, known: &[(&str, f64, f64)], port: &str) -> (f64, f64) {
+        let mut pressure = vec![None; self.system.streams.len()];
+        let mut temperature = pressure.clone();
+        for (port, bar, celsius) in known {
+            pressure[self.stream(port)] = Some(bar * 1e5).filter(|p| !p.is_nan());
+            temperature[self.stream(port)] = Some(celsius + 273.15).filter(|t| !t.is_nan());
+        }
+        let guess = Guess::new(&self.system.streams, pressure, temperature);
+        let (pressure, temperature) = guess.complete(std::slice::from_ref(&self.machine), (1e5, 288.15));
+        (pressure[self.stream(port)] / 1e5, temperature[self.stream(port)] - 273.15)
     }
 
     /// The values a row is evaluated at.

@@ -1,0 +1,112 @@
+//! From the text of a plant file to plain data, or to all of its faults.
+//!
+//! What can be judged without knowing any equipment kind is judged here: the TOML, keys and types, names and what
+//! refers to them, units that belong to a key or to a tag. Ports, quantities and formulas are held against the
+//! equipment kinds later.
+
+mod equipment;
+mod fluid;
+mod given;
+mod names;
+mod reader;
+mod search;
+mod shared;
+mod site;
+mod spread;
+mod stream;
+mod tag;
+#[cfg(test)]
+mod tests;
+
+use std::fmt::Write;
+
+use sha2::{Digest, Sha256};
+use toml::de::DeTable;
+
+use self::names::Names;
+use self::reader::{Entry, Faults, Reader};
+use super::{Plant, Span, Tag};
+use crate::fault::Fault;
+
+/// A plant file of a large site has a tenth of this.
+const LONGEST_FILE: usize = 4 << 20;
+
+/// Reads a plant file.
+///
+/// # Errors
+/// Every fault of the text in its order (the first 200); where it is no TOML, only what makes it none.
+pub fn parse(text: &str) -> Result<Plant, Vec<Fault>> {
+    if text.len() > LONGEST_FILE {
+        let message = format!("the plant file is larger than {} MiB", LONGEST_FILE >> 20);
+        return Err(vec![Fault { span: Span::default(), message }]);
+    }
+    let (document, errors) = DeTable::parse_recoverable(text);
+    let faults = Faults::new(text);
+    if errors.is_empty() {
+        let root = Reader::new(document.get_ref(), "the plant file".to_owned(), Span::default(), &faults);
+        let plant = read(root, &faults);
+        let faults = faults.into_sorted();
+        return if faults.is_empty() { Ok(Plant { revision: revision(text), ..plant }) } else { Err(faults) };
+    }
+    for error in &errors {
+        let span: Span = error.span().unwrap_or_default().into();
+        faults.add_with(span, || syntax_message(error.message(), text.get(span.start..span.end)));
+    }
+    Err(faults.into_sorted())
+}
+
+/// SHA-256 of the text in lower-case hexadecimal.
+fn revision(text: &str) -> String {
+    Sha256::digest(text.as_bytes()).iter().fold(String::new(), |mut hexadecimal, byte| {
+        // Writing to a string can't fail.
+        let _ = write!(hexadecimal, "{byte:02x}");
+        hexadecimal
+    })
+}
+
+fn syntax_message(message: &str, place: Option<&str>) -> String {
+    match (message, place) {
+        ("duplicate key", Some(key)) => format!("`{key}` is defined twice"),
+        _ => format!("this is not valid TOML: {message}"),
+    }
+}
+
+fn read<'a>(mut root: Reader<'a>, faults: &'a Faults<'a>) -> Plant {
+    let names = Names::collect(&root, faults);
+    let mut plant = site::silent();
+    check_format(&mut root);
+    site::read(&mut root, faults, &mut plant);
+    plant.fluids = each(&mut root, "fluids", |entry| fluid::read(entry, faults));
+    plant.streams = each(&mut root, "streams", |entry| stream::read(entry, &names, faults));
+    stream::check_ports(&plant.streams, faults);
+    plant.equipment = each(&mut root, "equipment", equipment::read);
+    plant.tags = each(&mut root, "tags", tag::read);
+    let tags = plant.tags.iter().map(|tag: &Tag| (tag.name.value.as_str(), tag)).collect();
+    plant.shared = each(&mut root, "shared", |entry| shared::read(entry, &tags, &names, faults));
+    plant.givens = each(&mut root, "given", given::read);
+    plant.shafts = each(&mut root, "shafts", |entry| equipment::read_shaft(entry, &names, faults));
+    plant.indicators = each(&mut root, "indicators", search::read_indicator);
+    plant.search = search::read(&mut root);
+    plant.steady = search::read_steady(&mut root, &names, faults);
+    root.finish();
+    plant
+}
+
+fn check_format(root: &mut Reader<'_>) {
+    if let Some(entry) = root.required("format", "1")
+        && let Some(format) = entry.number()
+        && format != 1.0
+    {
+        entry.fault(format!("this version reads plant files of format 1, not {format}"));
+    }
+}
+
+/// Reads every entry of a table of tables.
+fn each<'a, T>(
+    root: &mut Reader<'a>,
+    key: &'static str,
+    mut read: impl FnMut(&Entry<'a>) -> Option<T>,
+) -> Vec<T> {
+    let table = root.entry(key).and_then(|entry| entry.table(format!("[{key}]")));
+    table.map_or_else(Vec::new, |table| table.entries().iter().filter_map(&mut read).collect())
+}

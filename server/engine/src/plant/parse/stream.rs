@@ -50,9 +50,9 @@ fn endpoint(
         return None;
     }
     let (equipment, port) = text.split_once('.').unwrap_or((&text, ""));
-    let is_port =
-        |port: &str| port.split('.').all(|part| !part.is_empty() && part.chars().all(is_name_character));
-    if equipment.is_empty() || !is_port(port) {
+    // No hyphens: ports are parts of quantity names, and in formulas a hyphen after a dot is a minus.
+    let is_word = |part: &str| !part.is_empty() && part.chars().all(|c| is_name_character(c) && c != '-');
+    if equipment.is_empty() || !port.split('.').all(is_word) {
         faults.add(
             span,
             format!("`{key}` must be EQUIPMENT.PORT, for example \"hp_turbine.inlet\", not `{text}`"),

@@ -41,9 +41,11 @@ impl std::error::Error for Fault {}
 
 /// The candidate nearest to `wanted` by edit distance, if one is near enough to be a slip of the keys.
 pub fn nearest<'a>(wanted: &str, candidates: impl IntoIterator<Item = &'a str>) -> Option<&'a str> {
-    let limit = (wanted.chars().count() / 3).clamp(1, 4);
+    let length = wanted.chars().count();
+    let limit = (length / 3).clamp(1, 4);
     candidates
         .into_iter()
+        .filter(|candidate| candidate.chars().count().abs_diff(length) <= limit)
         .map(|candidate| (edit_distance(wanted, candidate), candidate))
         .filter(|(distance, _)| *distance <= limit)
         .min()

@@ -1,6 +1,6 @@
 //! The names of a plant file: their syntax, their one name space, and what refers to them.
 
-use std::collections::HashMap;
+use std::collections::{BTreeMap, BTreeSet, HashMap};
 
 use super::reader::{Faults, Reader};
 use crate::Position;
@@ -24,17 +24,20 @@ const BUILT_IN_FLUIDS: [&str; 2] = ["water", "air"];
 
 const LONGEST_NAME: usize = 100;
 
+/// Names that a misspelt one is compared with: with more, a file of nothing but faults would take seconds.
+const MOST_CANDIDATES: usize = 2000;
+
 /// Every name that the file defines.
 pub(super) struct Names<'a> {
-    shared: HashMap<&'a str, &'static str>,
-    fluids: Vec<&'a str>,
+    shared: BTreeMap<&'a str, &'static str>,
+    fluids: BTreeSet<&'a str>,
 }
 
 impl<'a> Names<'a> {
     /// Collects the names, reporting those that are no names or stand for two things.
     pub(super) fn collect(root: &Reader<'a>, faults: &Faults<'_>) -> Self {
         let mut defined = Vec::new();
-        let mut fluids = Vec::new();
+        let mut fluids = BTreeSet::new();
         for table in root.entries() {
             let Some(entries) = table.value.as_table().and_then(|_| table.table(table.key)) else { continue };
             let sharing = SHARING.iter().find(|(name, _)| *name == table.key);
@@ -51,7 +54,7 @@ impl<'a> Names<'a> {
                         );
                         faults.add(entry.key_span, message);
                     }
-                    fluids.push(entry.key);
+                    fluids.insert(entry.key);
                 }
             }
         }
@@ -85,7 +88,7 @@ impl<'a> Names<'a> {
             }
             None => faults.add_with(reference.span, || {
                 let candidates = self.shared.iter().filter(|(_, kind)| **kind == what).map(|(name, _)| *name);
-                format!("there is no {what} `{name}`{}", suggestion(name, candidates))
+                format!("there is no {what} `{name}`{}", suggestion(name, candidates.take(MOST_CANDIDATES)))
             }),
         }
     }
@@ -95,9 +98,10 @@ impl<'a> Names<'a> {
         let name = reference.value.as_str();
         if name == "air" {
             faults.add(reference.span, "this version does not support the fluid `air` yet");
-        } else if name != "water" && !self.fluids.contains(&name) {
+        } else if name != "water" && !self.fluids.contains(name) {
             faults.add_with(reference.span, || {
-                let near = suggestion(name, self.fluids.iter().copied().chain(BUILT_IN_FLUIDS));
+                let declared = self.fluids.iter().copied().take(MOST_CANDIDATES);
+                let near = suggestion(name, declared.chain(BUILT_IN_FLUIDS));
                 let declare = if near.is_empty() { format!("; declare it in [fluids.{name}]") } else { near };
                 format!("there is no fluid `{name}`{declare}")
             });

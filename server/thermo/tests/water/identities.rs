@@ -83,6 +83,28 @@ fn inverses_return_to_the_state_within_1e9() -> Result<(), WaterError> {
     Ok(())
 }
 
+#[test]
+fn wet_steam_returns_to_its_quality() -> Result<(), WaterError> {
+    let mut random = Random::new(18);
+    for _ in 0..5000 {
+        let (pressure, quality) = (random.between_logarithms(612.0, 22e6), random.between(0.0, 1.0));
+        let wet = State::from_pressure_quality(pressure, quality)?;
+        let temperature = saturation::temperature(pressure)?.0;
+        for found in [
+            State::from_pressure_enthalpy(pressure, wet.enthalpy)?,
+            State::from_pressure_entropy(pressure, wet.entropy)?,
+            State::from_temperature_quality(temperature, quality)?,
+        ] {
+            close(found.quality.unwrap_or(f64::NAN), quality, 1e-9, 1.0);
+            close(found.temperature, temperature, 1e-12, temperature);
+            close(found.volume, wet.volume, 1e-9, wet.volume);
+            close(found.enthalpy, wet.enthalpy, 1e-9, 1e6);
+            close(found.entropy, wet.entropy, 1e-9, 1e3);
+        }
+    }
+    Ok(())
+}
+
 /// dh = T ds + v dp through the inverses, whose derivatives come from the theorem of implicit functions.
 #[test]
 fn enthalpy_by_entropy_is_temperature_and_by_pressure_is_volume() -> Result<(), WaterError> {

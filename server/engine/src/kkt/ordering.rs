@@ -9,9 +9,10 @@
 //!   is the Hessian of what is left after a partial minimisation, so it is the weight plus something that isn't
 //!   negative;
 //! - a variable of the basis with an equation. `[h, c; c, -e]` with `h >= 0` and `e >= 0` has the determinant
-//!   `-(h e + c^2)`, again without cancellation. An equation qualifies when the root of that is at least [`THRESHOLD`] times
-//!   the largest that the variable could have with any of its equations (rows equilibrated), which bounds the growth
-//!   of the elimination inside of the basis. Pairs that fail are delayed simply by not being chosen.
+//!   `-(h e + c^2)`, again without cancellation. A pair qualifies when the root of that is at least [`THRESHOLD`] times
+//!   either the largest that the variable could have with any of its equations or the largest coefficient of the
+//!   equation (both equilibrated): as in an unsymmetric LU, either bounds the growth within the basis. Pairs that
+//!   fail are delayed simply by not being chosen.
 //!
 //! The next pivot is the one with the smallest front. Zeros that arise stay in the pattern: it must hold for other values.
 
@@ -134,13 +135,23 @@ impl Graph {
         let partners = own.iter().filter(|entry| self.role[entry.node as usize] == Role::Partner);
         let sized = partners.map(|entry| (entry.node, self.strength(node, entry)));
         let strongest = sized.clone().fold(0.0_f64, |most, (_, strength)| most.max(strength));
-        let permitted = sized.filter(|(_, strength)| strongest > 0.0 && *strength >= THRESHOLD * strongest);
+        let permitted = sized.filter(|(row, strength)| {
+            let enough = |largest: f64| largest > 0.0 && *strength >= THRESHOLD * largest;
+            enough(strongest) || enough(self.largest_in_row(*row))
+        });
         let priced = permitted.map(|(row, _)| (self.front_of_pair(node, row), row)).min();
         priced.map_or(alone, |(front, row)| Choice {
             cost: (2 * front).saturating_sub(1),
             partner: Some(row),
             floor: (COLLAPSE * strongest).powi(2),
         })
+    }
+
+    /// The largest coefficient of an equation.
+    fn largest_in_row(&self, row: u32) -> f64 {
+        let entries = self.adjacency[row as usize].iter();
+        let coefficients = entries.filter(|entry| self.role[entry.node as usize] != Role::Partner);
+        coefficients.fold(0.0, |most, entry| most.max(entry.value.abs()))
     }
 
     /// The root of the determinant's magnitude.

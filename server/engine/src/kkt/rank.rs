@@ -75,6 +75,8 @@ struct Elimination<'a> {
     members: Vec<Vec<u32>>,
     /// Free columns still to be tried, by number of rows.
     queue: BTreeSet<(usize, u32)>,
+    /// Free columns that had no permissible pivot; they return to the queue when one of their rows changes.
+    blocked: Vec<bool>,
     merged: Vec<Entry>,
 }
 
@@ -124,6 +126,7 @@ impl<'a> Elimination<'a> {
             rows,
             members,
             queue,
+            blocked: vec![false; columns.len()],
             merged: Vec::new(),
         }
     }
@@ -133,39 +136,41 @@ impl<'a> Elimination<'a> {
         entries.binary_search_by_key(&column, |entry| entry.column).map_or(0.0, |at| entries[at].value)
     }
 
-    /// The sparsest permissible pivot of the free block, or none when what is left of it is zero. A column that has
-    /// become negligible is set aside: later steps can't make it grow by more than the threshold allows.
+    /// The sparsest permissible pivot of the free block, or none when what is left of it is zero: the largest entry
+    /// of the block is always permissible.
     fn free_pivot(&mut self) -> Option<(u32, u32)> {
         let mut best: Option<(usize, u32, u32)> = None;
-        let mut set_aside = Vec::new();
+        let mut without = Vec::new();
         let mut looked_at = 0;
         for &(count, column) in &self.queue {
-            let members = &self.members[column as usize];
-            let largest = members.iter().fold(0.0_f64, |most, row| most.max(self.entry(*row, column).abs()));
-            if largest <= NEGLIGIBLE {
-                set_aside.push((count, column));
+            let Some((cost, row)) = self.sparsest_row(column) else {
+                without.push((count, column));
                 continue;
-            }
-            let floor = (THRESHOLD * largest).max(NEGLIGIBLE);
-            let mut found = false;
-            for &row in members {
-                let size = self.entry(row, column).abs();
-                if size >= floor && size >= THRESHOLD * self.largest_free(row) {
-                    found = true;
-                    let cost = (count - 1) * (self.rows[row as usize].len() - 1);
-                    let candidate = (cost, row, column);
-                    best = Some(best.map_or(candidate, |best| best.min(candidate)));
-                }
-            }
-            looked_at += usize::from(found);
-            if looked_at == CANDIDATES || best.is_some_and(|(cost, ..)| cost == 0) {
+            };
+            let candidate = (cost, row, column);
+            best = Some(best.map_or(candidate, |best| best.min(candidate)));
+            looked_at += 1;
+            if looked_at == CANDIDATES || cost == 0 {
                 break;
             }
         }
-        for key in set_aside {
+        for key in without {
             self.queue.remove(&key);
+            self.blocked[key.1 as usize] = true;
         }
         best.map(|(_, row, column)| (row, column))
+    }
+
+    /// The permissible pivot of a free column with the smallest Markowitz cost.
+    fn sparsest_row(&self, column: u32) -> Option<(usize, u32)> {
+        let members = &self.members[column as usize];
+        let sizes = members.iter().map(|row| (*row, self.entry(*row, column).abs()));
+        let largest = sizes.clone().fold(0.0_f64, |most, (_, size)| most.max(size));
+        let floor = THRESHOLD * largest;
+        let permissible = sizes.filter(|(row, size)| {
+            *size > NEGLIGIBLE && *size >= floor && *size >= THRESHOLD * self.largest_free(*row)
+        });
+        permissible.map(|(row, _)| ((members.len() - 1) * (self.rows[row as usize].len() - 1), row)).min()
     }
 
     fn largest_free(&self, row: u32) -> f64 {
@@ -180,9 +185,7 @@ impl<'a> Elimination<'a> {
         for entry in &pivot_row {
             self.leave(row, entry.column);
         }
-        if self.free[column as usize] {
-            self.queue.remove(&(self.members[column as usize].len(), column));
-        }
+        self.queue.remove(&(self.members[column as usize].len(), column));
         let at = pivot_row.partition_point(|entry| entry.column < column);
         let value = pivot_row[at].value;
         let mut others = pivot_row;
@@ -190,6 +193,12 @@ impl<'a> Elimination<'a> {
         for target in std::mem::take(&mut self.members[column as usize]) {
             let multiplier = self.entry(target, column) / value;
             self.subtract(target, column, multiplier, &others);
+            for at in 0..self.rows[target as usize].len() {
+                self.unblock(self.rows[target as usize][at].column);
+            }
+        }
+        for entry in &others {
+            self.unblock(entry.column);
         }
         Pivot { column, value, others }
     }
@@ -242,7 +251,13 @@ impl<'a> Elimination<'a> {
         }
     }
 
-    /// Moves a free column in the queue; one that was set aside or used isn't there and stays out.
+    fn unblock(&mut self, column: u32) {
+        if std::mem::take(&mut self.blocked[column as usize]) {
+            self.queue.insert((self.members[column as usize].len(), column));
+        }
+    }
+
+    /// Moves a free column in the queue; one that is blocked or used isn't there and stays out.
     fn requeue(&mut self, old: usize, new: usize, column: u32) {
         if self.free[column as usize] && self.queue.remove(&(old, column)) {
             self.queue.insert((new, column));

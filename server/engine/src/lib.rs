@@ -1,11 +1,25 @@
 //! Meterwright's engine: a plant file and readings in, one balance with its uncertainties out.
 //!
-//! Pure: no I/O, no clock, no async, no global state. Floors, from the ground: [`quantity`] and [`fault`]; [`plant`].
+//! Pure: no I/O, no clock, no async, no global state. Floors, from the ground: [`quantity`], [`fault`] and [`kkt`];
+//! [`plant`] and [`formula`]; [`equation`]; [`equipment`]; `compile` and [`estimate`]; `verdict`; and the door,
+//! [`CompiledPlant`]. No floor knows one above it.
 
+mod balance;
+mod compile;
+mod compiled_plant;
 pub mod equation;
 pub mod equipment;
+pub mod estimate;
 pub mod fault;
+pub mod formula;
+pub mod kkt;
 pub mod plant;
 pub mod quantity;
+mod verdict;
 
+pub use balance::{
+    Balance, GlobalTest, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, Reading,
+    TagBalance, TagClass, Verdict,
+};
+pub use compiled_plant::CompiledPlant;
 pub use fault::{Fault, Position};

@@ -30,6 +30,10 @@ impl Equation for Linear {
         }
         Ok(sum)
     }
+
+    fn coefficients(&self) -> Option<&[f64]> {
+        Some(&self.coefficients)
+    }
 }
 
 /// What one stream brings into an energy balance.

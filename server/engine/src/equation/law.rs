@@ -11,6 +11,10 @@ impl Equation for Difference {
     fn residual<S: Scalar>(&self, x: &[S], _held: Held<'_>) -> Result<S, EquationError> {
         Ok(x[0] - (x[1] - x[2]))
     }
+
+    fn coefficients(&self) -> Option<&[f64]> {
+        Some(&[1.0, -1.0, 1.0])
+    }
 }
 
 /// `x0 = x1 * x2`.

@@ -40,6 +40,11 @@ pub trait Equation: Send + Sync {
     /// # Errors
     /// [`EquationError`] where the equation has no value.
     fn residual<S: Scalar>(&self, x: &[S], held: Held<'_>) -> Result<S, EquationError>;
+
+    /// The coefficients of an equation that is linear, in the order of the local variables.
+    fn coefficients(&self) -> Option<&[f64]> {
+        None
+    }
 }
 
 /// The object-safe face of an [`Equation`].
@@ -54,47 +59,53 @@ impl<E: Equation> Differentiable for E {
     }
 
     fn linearise(&self, x: &[f64], held: Held<'_>, gradient: &mut [f64]) -> Result<f64, EquationError> {
+        if let Some(coefficients) = self.coefficients() {
+            gradient.copy_from_slice(coefficients);
+            return self.residual(x, held);
+        }
         match x.len() {
-            0..=4 => stride::<E, 4>(self, x, held, 0, gradient),
-            5..=6 => stride::<E, 6>(self, x, held, 0, gradient),
-            7..=8 => stride::<E, 8>(self, x, held, 0, gradient),
-            length => {
-                let mut value = 0.0;
-                for start in (0..length).step_by(8) {
-                    value = stride::<E, 8>(self, x, held, start, gradient)?;
-                }
-                Ok(value)
-            }
+            0..=4 => whole::<E, 4>(self, x, held, gradient),
+            5..=6 => whole::<E, 6>(self, x, held, gradient),
+            7..=8 => whole::<E, 8>(self, x, held, gradient),
+            _ => in_strides(self, x, held, gradient),
         }
     }
 }
 
-/// Local variables that fit on the stack; wider equations take a heap buffer.
-const INLINE: usize = 12;
-
-/// Derivatives by the `N` local variables from `start` on.
-fn stride<E: Equation, const N: usize>(
+/// Derivatives by all of at most `N` local variables at once.
+fn whole<E: Equation, const N: usize>(
     equation: &E,
     x: &[f64],
     held: Held<'_>,
-    start: usize,
     gradient: &mut [f64],
 ) -> Result<f64, EquationError> {
-    let seed = |(index, value): (usize, &f64)| Dual::<N>::variable(*value, index.wrapping_sub(start));
-    let residual = if x.len() <= INLINE {
-        let mut seeded = [Dual::<N>::constant(0.0); INLINE];
-        for (slot, local) in seeded.iter_mut().zip(x.iter().enumerate()) {
-            *slot = seed(local);
-        }
-        equation.residual(&seeded[..x.len()], held)?
-    } else {
-        let seeded: Vec<Dual<N>> = x.iter().enumerate().map(seed).collect();
-        equation.residual(&seeded, held)?
-    };
-    for (slot, slope) in gradient.iter_mut().skip(start).zip(residual.gradient) {
-        *slot = slope;
-    }
+    let seeded: [Dual<N>; N] =
+        std::array::from_fn(|index| Dual::variable(x.get(index).copied().unwrap_or(0.0), index));
+    let residual = equation.residual(&seeded[..x.len()], held)?;
+    gradient.copy_from_slice(&residual.gradient[..x.len()]);
     Ok(residual.re)
+}
+
+/// Derivatives by many local variables, eight at a time.
+fn in_strides<E: Equation>(
+    equation: &E,
+    x: &[f64],
+    held: Held<'_>,
+    gradient: &mut [f64],
+) -> Result<f64, EquationError> {
+    const STRIDE: usize = 8;
+    let mut value = 0.0;
+    let mut seeded: Vec<Dual<STRIDE>> = x.iter().map(|value| Dual::constant(*value)).collect();
+    for (number, slopes) in gradient.chunks_mut(STRIDE).enumerate() {
+        let start = number * STRIDE;
+        for (index, (slot, value)) in seeded.iter_mut().zip(x).enumerate() {
+            *slot = Dual::variable(*value, index.wrapping_sub(start));
+        }
+        let residual = equation.residual(&seeded, held)?;
+        value = residual.re;
+        slopes.copy_from_slice(&residual.gradient[..slopes.len()]);
+    }
+    Ok(value)
 }
 
 /// What part a row has in the problem.

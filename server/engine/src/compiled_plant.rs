@@ -1,0 +1,435 @@
+//! The door: a plant compiled once, then one balance for each set of readings.
+
+use crate::balance::{
+    Balance, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, Reading, TagBalance, TagClass,
+    Verdict,
+};
+use crate::compile::{self, Compiled, Exclusion, Instrument, Observed, SoftGiven};
+use crate::equipment::{Machine, VariableData, VariableRole};
+use crate::estimate::{self, Anchor, Failure, Observation, Problem, Situation, Solution};
+use crate::fault::Fault;
+use crate::kkt::FactorError;
+use crate::plant::Plant;
+use crate::verdict::{self, Judged, Limits, Residual};
+
+/// A plant, ready to be balanced. Thread-safe: balances take it by shared reference, and the same readings from the
+/// same anchor give the same bits whatever else runs.
+pub struct CompiledPlant {
+    problem: Problem,
+    machines: Vec<Machine>,
+    instruments: Vec<Instrument>,
+    soft_givens: Vec<SoftGiven>,
+    shared: Vec<u32>,
+    indicator_variables: Vec<u32>,
+    quantity_variables: Vec<u32>,
+    tags: Vec<Label>,
+    givens: Vec<Label>,
+    indicators: Vec<Label>,
+    quantities: Vec<Label>,
+    surroundings: (f64, f64),
+    situation: Situation,
+    limits: Limits,
+}
+
+impl CompiledPlant {
+    /// Compiles a plant.
+    ///
+    /// # Errors
+    /// Every fault of the plant file that can be seen without readings.
+    pub fn compile(plant: &Plant) -> Result<Self, Vec<Fault>> {
+        let compiled = compile::compile(plant)?;
+        let Compiled { system, machines, instruments, givens, shared, indicators, quantities, surroundings } =
+            compiled;
+        // Rows are only made of variables that the system has handed out.
+        let problem = Problem::new(system).map_err(|error| {
+            vec![Fault {
+                span: plant.name.span,
+                message: format!("the plant gives no problem to solve: {error}"),
+            }]
+        })?;
+        let (indicator_labels, indicator_variables) = indicators.into_iter().unzip();
+        let (quantity_labels, quantity_variables) = quantities.into_iter().unzip();
+        Ok(Self {
+            situation: problem.situation(),
+            problem,
+            machines,
+            tags: instruments.iter().map(|instrument| instrument.label.clone()).collect(),
+            givens: givens.iter().map(|given| given.label.clone()).collect(),
+            indicators: indicator_labels,
+            quantities: quantity_labels,
+            instruments,
+            soft_givens: givens,
+            shared,
+            indicator_variables,
+            quantity_variables,
+            surroundings,
+            limits: Limits::default(),
+        })
+    }
+
+    /// The tags, in the order of the plant file.
+    pub fn tags(&self) -> &[Label] {
+        &self.tags
+    }
+
+    /// The soft givens.
+    pub fn givens(&self) -> &[Label] {
+        &self.givens
+    }
+
+    /// The quantities that balances list.
+    pub fn quantities(&self) -> &[Label] {
+        &self.quantities
+    }
+
+    /// The indicators.
+    pub fn indicators(&self) -> &[Label] {
+        &self.indicators
+    }
+
+    /// The problem behind the plant: variables and equations.
+    pub fn problem(&self) -> &Problem {
+        &self.problem
+    }
+
+    /// A state that later balances start from: balanced from the tags' typical values and, for tags that state none,
+    /// from these readings; or, if that finds nothing, from the readings alone. Nothing where neither closes.
+    pub fn anchor(&self, readings: &[Option<Reading>]) -> Option<Anchor> {
+        let typical = |(instrument, reading): (&Instrument, &Option<Reading>)| match instrument.tag.typical {
+            Some(typical) => Some(Reading::single(instrument.tag.unit.value.from_si(typical))),
+            None => *reading,
+        };
+        let typical: Vec<Option<Reading>> = self.instruments.iter().zip(readings).map(typical).collect();
+        [typical.as_slice(), readings].into_iter().find_map(|readings| {
+            let observations = self.observe(readings);
+            self.solve_cold(&observations.situation).ok().map(|(_, anchor)| anchor)
+        })
+    }
+
+    /// Balances one set of readings, one for each tag in the order of [`Self::tags`]; `None` is no good reading.
+    /// Missing readings at the end may be left out.
+    pub fn balance(&self, readings: &[Option<Reading>], anchor: Option<&Anchor>) -> Balance {
+        let observations = self.observe(readings);
+        let situation = &observations.situation;
+        let from_anchor = anchor.and_then(|anchor| estimate::solve(&self.problem, situation, anchor).ok());
+        let solution = match from_anchor {
+            Some(solution) => Ok(solution),
+            None => self.solve_cold(situation).map(|(solution, _)| solution),
+        };
+        let result = solution
+            .map_err(|failure| failure.to_string())
+            .and_then(|solution| self.report(&observations, &solution).map_err(|error| error.to_string()));
+        result.unwrap_or_else(|reason| Balance {
+            outcome: Outcome::NotFound { reason },
+            warnings: observations.warnings(&self.instruments),
+            ..Balance::default()
+        })
+    }
+
+    fn solve_cold(&self, situation: &Situation) -> Result<(Solution, Anchor), Failure> {
+        let (start, forms) =
+            estimate::cold_start(&self.problem, situation, &self.machines, self.surroundings);
+        estimate::solve_cold(&self.problem, situation, start, forms)
+    }
+
+    /// Turns readings into the situation of one balance.
+    fn observe(&self, readings: &[Option<Reading>]) -> Observations {
+        let mut situation = self.situation.clone();
+        let mut tags = Vec::with_capacity(self.instruments.len());
+        for (number, instrument) in self.instruments.iter().enumerate() {
+            let reading = readings.get(number).and_then(Option::as_ref);
+            let samples = reading.map_or(0, |reading| reading.samples);
+            let read = instrument.read(reading);
+            if let (Ok(observed), Some(variable)) = (read, instrument.variable) {
+                situation.observations.push(Observation {
+                    variable,
+                    value: observed.value + instrument.shift,
+                    sigma: observed.sigma,
+                    repeat: observed.repeat,
+                });
+                for (size, spread) in &instrument.shares {
+                    let size_si = instrument.spread(*spread, observed.value, instrument.tag.unit.value);
+                    situation.exact[*size as usize] = Some(size_si);
+                }
+            }
+            tags.push((read, samples));
+        }
+        for given in &self.soft_givens {
+            let value = given.value + given.shift;
+            situation.observations.push(Observation {
+                variable: given.variable,
+                value,
+                sigma: given.sigma,
+                repeat: None,
+            });
+        }
+        for variable in &self.shared {
+            situation.observations.push(Observation {
+                variable: *variable,
+                value: 0.0,
+                sigma: 1.0,
+                repeat: None,
+            });
+        }
+        Observations { situation, tags }
+    }
+
+    /// Everything a user is told of a solution.
+    fn report(&self, observations: &Observations, solution: &Solution) -> Result<Balance, FactorError> {
+        let linear = &solution.linearisation;
+        let variances = linear.variances()?;
+        let limit = self.largest(observations);
+        let told = Told { solution, variances: &variances.total, repeat: variances.repeat.as_deref(), limit };
+        let (residuals, places) = self.residuals(observations, &told);
+        let judged = verdict::judge(&residuals, &self.limits);
+        let tags = self.tag_balances(observations, &told, &residuals, &judged, &places);
+        let givens = self.given_balances(&told, &residuals, &judged);
+        let quantities = self.quantity_balances(&told, &tags);
+        let indicators = self.indicator_balances(&told);
+        let statistic = 2.0 * observations.situation.objective(&solution.x);
+        let mut warnings = observations.warnings(&self.instruments);
+        warnings.extend(solution.at_bound.iter().map(|variable| self.bound_warning(*variable)));
+        warnings.extend(solution.remarks.iter().cloned());
+        Ok(Balance {
+            outcome: Outcome::Converged,
+            iterations: solution.iterations,
+            global_test: Some(verdict::global_test(statistic, linear.degrees_of_freedom(), &self.limits)),
+            tags,
+            givens,
+            quantities,
+            indicators,
+            warnings,
+        })
+    }
+
+    /// The largest flow and power that anything reads, beyond which an uncertainty says nothing.
+    fn largest(&self, observations: &Observations) -> Largest {
+        let mut largest = Largest { mass_flow: 0.0, power: 0.0 };
+        for observation in &observations.situation.observations {
+            let size = observation.value.abs();
+            match self.problem.variables[observation.variable as usize].role {
+                VariableRole::MassFlow => largest.mass_flow = largest.mass_flow.max(size),
+                VariableRole::Power => largest.power = largest.power.max(size),
+                _ => {}
+            }
+        }
+        largest
+    }
+
+    /// Residuals of all live tags and then of the soft givens; and where each tag's stands.
+    fn residuals(&self, observations: &Observations, told: &Told<'_>) -> (Vec<Residual>, Vec<Option<usize>>) {
+        let mut residuals = Vec::with_capacity(self.instruments.len() + self.soft_givens.len());
+        let mut places = Vec::with_capacity(self.instruments.len());
+        for (instrument, (read, _)) in self.instruments.iter().zip(&observations.tags) {
+            let (Ok(observed), Some(variable)) = (read, instrument.variable) else {
+                places.push(None);
+                continue;
+            };
+            places.push(Some(residuals.len()));
+            residuals.push(told.residual(variable, observed.value + instrument.shift, observed.sigma));
+        }
+        for given in &self.soft_givens {
+            residuals.push(told.residual(given.variable, given.value + given.shift, given.sigma));
+        }
+        (residuals, places)
+    }
+
+    fn tag_balances(
+        &self,
+        observations: &Observations,
+        told: &Told<'_>,
+        residuals: &[Residual],
+        judged: &[Judged],
+        places: &[Option<usize>],
+    ) -> Vec<TagBalance> {
+        let one = |((instrument, (read, samples)), place): ((&Instrument, &(Read, u32)), &Option<usize>)| {
+            let reads = instrument.base.map(|base| (base, instrument.shift));
+            match (place, read) {
+                (Some(place), Ok(observed)) => {
+                    let shared = instrument.shared_sigma(observed);
+                    let (residual, judged) = (&residuals[*place], &judged[*place]);
+                    told.tag(reads, *observed, *samples, shared, residual, judged)
+                }
+                _ => told.excluded(reads, read.ok(), *samples),
+            }
+        };
+        self.instruments.iter().zip(&observations.tags).zip(places).map(one).collect()
+    }
+
+    fn given_balances(&self, told: &Told<'_>, residuals: &[Residual], judged: &[Judged]) -> Vec<TagBalance> {
+        let first = residuals.len() - self.soft_givens.len();
+        let one = |(given, place): (&SoftGiven, usize)| {
+            let observed = Observed { value: given.value, sigma: given.sigma, repeat: None };
+            told.tag(Some((given.variable, given.shift)), observed, 0, 0.0, &residuals[place], &judged[place])
+        };
+        self.soft_givens.iter().zip(first..).map(one).collect()
+    }
+
+    fn quantity_balances(&self, told: &Told<'_>, tags: &[TagBalance]) -> Vec<QuantityBalance> {
+        let mut redundant = vec![false; self.problem.variables.len()];
+        for (instrument, tag) in self.instruments.iter().zip(tags) {
+            if let Some(reads) = instrument.reads.filter(|_| tag.class == TagClass::Redundant) {
+                redundant[reads as usize] = true;
+            }
+        }
+        let one = |variable: &u32| {
+            let known = told.known(*variable, &self.problem.variables[*variable as usize]);
+            let class = match known {
+                None => QuantityClass::Unobservable,
+                Some(_) if redundant[*variable as usize] => QuantityClass::Redundant,
+                Some(_) => QuantityClass::Observable,
+            };
+            QuantityBalance {
+                value: known.map(|(value, _)| value),
+                sigma: known.map(|(_, sigma)| sigma),
+                repeat_sigma: known.and_then(|_| told.repeat_sigma(*variable)),
+                at_bound: told.solution.at_bound.contains(variable),
+                class,
+            }
+        };
+        self.quantity_variables.iter().map(one).collect()
+    }
+
+    fn indicator_balances(&self, told: &Told<'_>) -> Vec<IndicatorBalance> {
+        let one = |variable: &u32| {
+            let known = told.known(*variable, &self.problem.variables[*variable as usize]);
+            IndicatorBalance {
+                value: known.map(|(value, _)| value),
+                sigma: known.map(|(_, sigma)| sigma),
+                repeat_sigma: known.and_then(|_| told.repeat_sigma(*variable)),
+            }
+        };
+        self.indicator_variables.iter().map(one).collect()
+    }
+
+    fn bound_warning(&self, variable: u32) -> String {
+        let data = &self.problem.variables[variable as usize];
+        let unit = crate::quantity::Unit::default_for(data.dimension);
+        let bound = if data.lower.is_finite() { data.lower } else { data.upper };
+        format!(
+            "`{}` lies at its bound of {:.4} {}: the readings ask for a value beyond it, so one of them is wrong or the \
+             plant file leaves something out",
+            data.name,
+            unit.from_si(bound),
+            unit.name()
+        )
+    }
+}
+
+/// A tag's reading or why it takes no part.
+type Read = Result<Observed, Exclusion>;
+
+/// The situation of one balance and what became of each tag.
+struct Observations {
+    situation: Situation,
+    tags: Vec<(Read, u32)>,
+}
+
+impl Observations {
+    /// Readings that were left out for a reason a user should know.
+    fn warnings(&self, instruments: &[Instrument]) -> Vec<String> {
+        let one = |(instrument, (read, _)): (&Instrument, &(Read, u32))| {
+            let name = &instrument.label.name;
+            match read {
+                Err(Exclusion::OutsideSpan) => {
+                    Some(format!("{name} reads beyond what its span lets it send: left out as bad"))
+                }
+                Err(Exclusion::NoUncertainty) => Some(format!(
+                    "{name} has an uncertainty of zero at this reading: left out; state a part that doesn't vanish"
+                )),
+                _ => None,
+            }
+        };
+        instruments.iter().zip(&self.tags).filter_map(one).collect()
+    }
+}
+
+/// Sizes beyond which an uncertainty says nothing.
+struct Largest {
+    mass_flow: f64,
+    power: f64,
+}
+
+/// A solution with its uncertainties, ready to be told.
+struct Told<'a> {
+    solution: &'a Solution,
+    variances: &'a [f64],
+    repeat: Option<&'a [f64]>,
+    limit: Largest,
+}
+
+impl Told<'_> {
+    fn residual(&self, variable: u32, value: f64, sigma: f64) -> Residual {
+        let place = variable as usize;
+        Residual { deviation: value - self.solution.x[place], sigma, variance: self.variances[place] }
+    }
+
+    /// Value and standard uncertainty of a variable, if it can be known.
+    fn known(&self, variable: u32, data: &VariableData) -> Option<(f64, f64)> {
+        let place = variable as usize;
+        let (value, sigma) = (self.solution.x[place], self.variances[place].sqrt());
+        let span = match data.role {
+            VariableRole::Pressure => value.abs(),
+            VariableRole::Temperature => 100.0,
+            VariableRole::Enthalpy => 5e5,
+            VariableRole::Ratio => 1.0,
+            VariableRole::MassFlow if self.limit.mass_flow > 0.0 => self.limit.mass_flow,
+            VariableRole::Power if self.limit.power > 0.0 => self.limit.power,
+            _ => f64::INFINITY,
+        };
+        let determined = !self.solution.linearisation.touched()[place];
+        (determined && sigma <= span && value.is_finite()).then_some((value, sigma))
+    }
+
+    fn repeat_sigma(&self, variable: u32) -> Option<f64> {
+        self.repeat.map(|repeat| repeat[variable as usize].sqrt())
+    }
+
+    /// A live tag or given; `reads` is the variable it speaks of and variable minus reading.
+    fn tag(
+        &self,
+        reads: Option<(u32, f64)>,
+        observed: Observed,
+        samples: u32,
+        shared: f64,
+        residual: &Residual,
+        judged: &Judged,
+    ) -> TagBalance {
+        let sigma = observed.sigma.hypot(shared);
+        let variance = reads.map_or(residual.variance, |(base, _)| self.variances[base as usize]);
+        let reconciled = reads.map_or(observed.value, |(base, shift)| self.solution.x[base as usize] - shift);
+        let redundancy =
+            if shared > 0.0 { (1.0 - variance / (sigma * sigma)).clamp(0.0, 1.0) } else { judged.redundancy };
+        TagBalance {
+            measured: Some(observed.value),
+            sigma: Some(sigma),
+            samples,
+            reconciled: Some(reconciled),
+            reconciled_sigma: Some(variance.sqrt()),
+            correction: Some(reconciled - observed.value),
+            redundancy: Some(redundancy),
+            statistic: judged.statistic,
+            minimum_detectable_bias: judged.minimum_detectable_bias,
+            class: judged.class,
+            verdict: judged.verdict,
+        }
+    }
+
+    /// A tag that takes no part; what it would have read is told where it is known.
+    fn excluded(&self, reads: Option<(u32, f64)>, observed: Option<Observed>, samples: u32) -> TagBalance {
+        let known = reads.filter(|(base, _)| !self.solution.linearisation.touched()[*base as usize]);
+        TagBalance {
+            measured: observed.map(|observed| observed.value),
+            sigma: observed.map(|observed| observed.sigma),
+            samples,
+            reconciled: known.map(|(base, shift)| self.solution.x[base as usize] - shift),
+            reconciled_sigma: known.map(|(base, _)| self.variances[base as usize].sqrt()),
+            correction: None,
+            redundancy: None,
+            statistic: None,
+            minimum_detectable_bias: None,
+            class: TagClass::Nonredundant,
+            verdict: Verdict::Excluded,
+        }
+    }
+}

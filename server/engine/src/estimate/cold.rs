@@ -1,0 +1,184 @@
+//! A poor start made good: proximal Gauss-Newton steps that need no rank decisions.
+//!
+//! Every variable is held to where it is by a weak weight that fades, and every equation is softened a little, so that
+//! the system is quasi-definite whatever the point looks like (equal enthalpies at a guessed start make equations
+//! look dependent that aren't). What nothing determines stays near its guess.
+
+use std::sync::Arc;
+
+use crate::equation::Form;
+use crate::kkt::{Analysis, Column, Diagonal, Factor, Vectors};
+
+use super::bounds::longest;
+use super::evaluation::Evaluation;
+use super::failure::Failure;
+use super::problem::{Problem, Situation};
+use super::scaling::{Anchor, Scaling};
+use super::solve::{Filter, Solution, solve_from};
+
+/// Where proximal steps end.
+pub(super) struct Softened {
+    pub(super) x: Vec<f64>,
+    /// Scaled residual of each equation.
+    pub(super) slack: Vec<f64>,
+}
+
+/// Softening that only keeps dependent equations apart.
+const FAINT: f64 = 1e-10;
+/// Steps of the proximal iteration.
+const MOST_STEPS: usize = 80;
+/// Steps smaller than this (scaled) end it.
+const SMALL: f64 = 1e-6;
+/// So does a damping that leaves no room to move.
+const STRONGEST: f64 = 1e8;
+
+/// Solves from a guess alone; answers also the anchor that later solves start from.
+///
+/// # Errors
+/// [`Failure`].
+pub fn solve_cold(
+    problem: &Problem,
+    situation: &Situation,
+    guess: Vec<f64>,
+    forms: Vec<Form>,
+) -> Result<(Solution, Anchor), Failure> {
+    let (weight, _) = situation.weights();
+    let rough = Anchor::new(problem, guess, forms, weight.clone());
+    let near = proximal(problem, situation, &rough.scale, rough.x.clone(), &rough.forms, FAINT)?;
+    let anchor = Anchor::new(problem, near.x, rough.forms, weight.clone());
+    let solution = solve_from(problem, situation, &anchor, anchor.x.clone(), anchor.forms.clone())?;
+    let anchor = Anchor::new(problem, solution.x.clone(), solution.forms.clone(), weight);
+    Ok((solution, anchor))
+}
+
+/// Proximal steps from `x` with every equation softened by `softening`.
+pub(super) fn proximal(
+    problem: &Problem,
+    situation: &Situation,
+    scale: &[f64],
+    mut x: Vec<f64>,
+    forms: &[Form],
+    softening: f64,
+) -> Result<Softened, Failure> {
+    let (weight, mean) = situation.weights();
+    for (value, exact) in x.iter_mut().zip(&situation.exact) {
+        *value = exact.unwrap_or(*value);
+    }
+    let mut here = Evaluation::default();
+    here.at(problem, &x, forms).map_err(|error| Failure::no_value(problem, &error))?;
+    let mut strength = 1e-2;
+    let mut filter = Filter::default();
+    let mut values = Vec::new();
+    let mut factor = None;
+    let mut scaling = Scaling::at(problem, scale.to_vec(), &here);
+    for step_number in 0..MOST_STEPS {
+        if step_number % 8 == 0 {
+            // Rows whose derivatives were small at a poor point are scaled anew as the point improves.
+            scaling = Scaling::at(problem, scale.to_vec(), &here);
+            filter = Filter::default();
+            factor = None;
+        }
+        scaling.jacobian(problem, &here, &mut values);
+        let weights: Vec<f64> = weight.iter().zip(scale).map(|(w, s)| w * s * s).collect();
+        let system = System { problem, situation, weights: &weights, values: &values, strength, softening };
+        let mut ready = system.factor(factor.take())?;
+        let mut right = Vectors::zeros(ready.analysis());
+        let mut step = Vectors::zeros(ready.analysis());
+        for (j, slot) in right.columns.iter_mut().enumerate() {
+            *slot = weight[j] * (mean[j] - x[j]) * scale[j];
+        }
+        for (i, slot) in right.rows.iter_mut().enumerate() {
+            *slot = -here.residual[i] * scaling.row[i];
+        }
+        let solved = ready.solve(&right, &mut step);
+        factor = Some(ready);
+        if solved.is_err() || !step.columns.iter().all(|value| value.is_finite()) {
+            strength *= 10.0;
+            factor = None;
+            continue;
+        }
+        let moved =
+            take_step(problem, situation, &scaling, forms, &mut x, &mut here, &step.columns, &mut filter);
+        let size = step.columns.iter().map(|value| value.abs()).fold(0.0, f64::max);
+        if size < SMALL || strength > STRONGEST {
+            break;
+        } else if !moved {
+            strength *= 10.0;
+        } else {
+            strength = (strength * 0.2).max(1e-9);
+        }
+    }
+    let slack = here.residual.iter().zip(&scaling.row).map(|(c, s)| c * s).collect();
+    Ok(Softened { x, slack })
+}
+
+/// One proximal system.
+struct System<'a> {
+    problem: &'a Problem,
+    situation: &'a Situation,
+    weights: &'a [f64],
+    values: &'a [f64],
+    strength: f64,
+    softening: f64,
+}
+
+impl System<'_> {
+    /// Factors it, with the pivots of the last one where they serve.
+    fn factor(&self, old: Option<Factor<f64>>) -> Result<Factor<f64>, Failure> {
+        let damping = vec![self.strength; self.weights.len()];
+        let softening = vec![self.softening; self.problem.rows.len()];
+        let diagonal = Diagonal { weights: self.weights, damping: &damping, softening: &softening };
+        if let Some(mut factor) = old
+            && factor.refactor(self.values, &diagonal).is_ok()
+        {
+            return Ok(factor);
+        }
+        let column = |(weight, exact): (&f64, &Option<f64>)| match exact {
+            Some(_) => Column::Fixed,
+            None => Column::Weighted(weight + self.strength),
+        };
+        let columns: Vec<Column> = self.weights.iter().zip(&self.situation.exact).map(column).collect();
+        let numeric = |message: String| Failure::Numeric { message };
+        let analysis = Analysis::softened(&self.problem.pattern, self.values, &columns)
+            .map_err(|error| numeric(error.to_string()))?;
+        let mut factor = Factor::new(Arc::new(analysis));
+        factor.refactor(self.values, &diagonal).map_err(|error| numeric(error.to_string()))?;
+        Ok(factor)
+    }
+}
+
+/// Moves along a step as far as the filter lets it; says whether it moved.
+#[allow(clippy::too_many_arguments, reason = "the state of the iteration, used once")]
+fn take_step(
+    problem: &Problem,
+    situation: &Situation,
+    scaling: &Scaling,
+    forms: &[Form],
+    x: &mut Vec<f64>,
+    here: &mut Evaluation,
+    step: &[f64],
+    filter: &mut Filter,
+) -> bool {
+    let infeasibility = |here: &Evaluation| -> f64 {
+        here.residual.iter().zip(&scaling.row).map(|(c, s)| (c * s).abs()).sum()
+    };
+    let now = (infeasibility(here), situation.objective(x));
+    let from = x.clone();
+    let mut share = longest(&problem.variables, &from, step, scaling);
+    for _ in 0..8 {
+        for (j, value) in x.iter_mut().enumerate() {
+            *value = from[j] + share * step[j] * scaling.column[j];
+        }
+        if here.at(problem, x, forms).is_ok()
+            && filter.accepts((infeasibility(here), situation.objective(x)), now)
+        {
+            filter.add(now);
+            return true;
+        }
+        share *= 0.5;
+    }
+    *x = from;
+    // This point was accepted before, so that it has a value; the evaluation must be its own again.
+    let _ = here.at(problem, x, forms);
+    false
+}

@@ -1,0 +1,110 @@
+//! The problem linearised at its solution: covariances, and what can't be known. It outlives the solve.
+
+use std::sync::Arc;
+
+use meterwright_thermo::{Dual, Scalar};
+
+use crate::kkt::{Diagonal, Factor, FactorError, SelectedInverse, Vectors};
+
+use super::cache::Structure;
+use super::problem::Situation;
+use super::solve::undetermined;
+
+/// A factor of the equations' system at a solution and what it takes to ask it.
+///
+/// It is made in dual numbers: beside each number stands how it changes when the weights `w` of the observations grow
+/// at the rate `w^2 r^2`, `r` being the part of an observation's uncertainty that is drawn anew each period. With the
+/// gain `G = Z W`, minus the derivative of the inverse's diagonal is then `diag(Z diag(w^2 r^2) Z) = diag(G r^2 G')`,
+/// the part of each variance that comes from repeatability.
+pub struct Linearisation {
+    structure: Arc<Structure>,
+    factor: Factor<Dual<1>>,
+    repeat_known: bool,
+    /// Whether nothing determines each variable.
+    touched: Vec<bool>,
+    degrees_of_freedom: usize,
+}
+
+/// Variances of the estimates of all variables, SI squared.
+pub struct Variances {
+    /// Of each variable; zero for exact and undetermined ones.
+    pub total: Vec<f64>,
+    /// The part that is drawn anew each period; nothing where no observation's repeatability is known.
+    pub repeat: Option<Vec<f64>>,
+}
+
+impl Linearisation {
+    pub(super) fn new(
+        structure: Arc<Structure>,
+        jacobian: &[f64],
+        situation: &Situation,
+        degrees_of_freedom: usize,
+        undefined: Vec<u32>,
+    ) -> Result<Self, FactorError> {
+        let scale = &structure.scaling.column;
+        let mut weights = vec![Dual::<1>::constant(0.0); scale.len()];
+        for observation in &situation.observations {
+            let (place, w) = (observation.variable as usize, observation.sigma.powi(-2));
+            let rate = (w * observation.repeat.unwrap_or(0.0)).powi(2);
+            weights[place] += Dual { re: w, gradient: [rate] } * (scale[place] * scale[place]);
+        }
+        let mut factor = Factor::new(Arc::clone(&structure.analysis));
+        factor.refactor(jacobian, &Diagonal::new(&weights))?;
+        let mut touched = undetermined(&structure.analysis, scale.len());
+        for variable in undefined {
+            touched[variable as usize] = true;
+        }
+        let repeat_known = situation.observations.iter().any(|observation| observation.repeat.is_some());
+        Ok(Self { structure, factor, repeat_known, touched, degrees_of_freedom })
+    }
+
+    /// Degrees of freedom of the balance: observations beyond what they determine.
+    pub fn degrees_of_freedom(&self) -> usize {
+        self.degrees_of_freedom
+    }
+
+    /// Number of equations that follow from others.
+    pub fn dropped_rows(&self) -> usize {
+        self.structure.analysis.dropped_rows().len()
+    }
+
+    /// For each variable whether nothing determines it.
+    pub fn touched(&self) -> &[bool] {
+        &self.touched
+    }
+
+    /// Variances of all estimates.
+    ///
+    /// # Errors
+    /// [`FactorError`] if there is no factor.
+    pub fn variances(&self) -> Result<Variances, FactorError> {
+        let mut inverse = SelectedInverse::new(Arc::clone(&self.structure.analysis));
+        self.factor.selected_inverse(&mut inverse)?;
+        let scale = &self.structure.scaling.column;
+        let mut total = Vec::with_capacity(scale.len());
+        let mut repeat = Vec::with_capacity(scale.len());
+        for (column, s) in scale.iter().enumerate() {
+            let variance = inverse.variance(column) * (s * s);
+            total.push(variance.re.max(0.0));
+            repeat.push((-variance.gradient[0]).max(0.0));
+        }
+        Ok(Variances { total, repeat: self.repeat_known.then_some(repeat) })
+    }
+
+    /// How every variable moves with a linear function of the variables: `Z gradient`, SI. The covariance of each
+    /// variable with the function; its product with the gradient is the function's variance.
+    ///
+    /// # Errors
+    /// [`FactorError`] if there is no factor.
+    pub fn covariance_with(&mut self, gradient: &[(u32, f64)]) -> Result<Vec<f64>, FactorError> {
+        let scale = &self.structure.scaling.column;
+        let mut right = Vectors::zeros(&self.structure.analysis);
+        let mut solution = Vectors::zeros(&self.structure.analysis);
+        for (variable, slope) in gradient {
+            right.columns[*variable as usize] += Dual::constant(slope * scale[*variable as usize]);
+        }
+        self.factor.solve(&right, &mut solution)?;
+        self.factor.refine(&right, &mut solution)?;
+        Ok(solution.columns.iter().zip(scale).map(|(value, s)| value.value() * s).collect())
+    }
+}

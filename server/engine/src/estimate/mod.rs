@@ -1,0 +1,25 @@
+//! Non-linear weighted least squares under equations: the numeric half of the engine.
+//!
+//! It knows variables, rows, observations and what is exact; not tags, not plants. In files named after the nouns of
+//! the mathematics: [`problem`], [`evaluation`], [`scaling`], [`start`], [`solve`], [`bounds`], [`linearisation`].
+
+mod bounds;
+mod cache;
+mod cold;
+mod evaluation;
+mod failure;
+mod linearisation;
+mod phases;
+mod problem;
+mod scaling;
+mod solve;
+mod start;
+
+pub use cold::solve_cold;
+pub use evaluation::Evaluation;
+pub use failure::Failure;
+pub use linearisation::{Linearisation, Variances};
+pub use problem::{Observation, Problem, Situation};
+pub use scaling::Anchor;
+pub use solve::{Solution, solve, solve_from};
+pub(crate) use start::cold_start;

@@ -1,0 +1,127 @@
+//! The problem: variables and rows that never change, and the situation of one balance.
+//!
+//! Minimise `1/2 sum ((y - x)/sigma)^2` over the observations subject to `c(x) = 0` and bounds. Every observation and
+//! every reported quantity is ONE variable, so that the weights are diagonal and the pattern is that of the rows.
+
+use crate::equation::Row;
+use crate::equipment::{Knowledge, StreamData, System, VariableData};
+use crate::kkt::{Pattern, PatternError};
+
+use super::cache::Cache;
+
+/// Variables, rows and their pattern, with the analyses made of them so far. `Send + Sync`; solves take it by
+/// reference.
+pub struct Problem {
+    pub(crate) variables: Vec<VariableData>,
+    pub(crate) rows: Vec<Row>,
+    pub(crate) streams: Vec<StreamData>,
+    pub(crate) pattern: Pattern,
+    /// Where the entries of a row's local variables stand in the pattern's row, which is sorted by column.
+    pub(crate) places: Vec<u32>,
+    pub(crate) cache: Cache,
+}
+
+impl Problem {
+    /// A problem over a system.
+    ///
+    /// # Errors
+    /// [`PatternError`] if a row names a variable that isn't there.
+    pub fn new(system: System) -> Result<Self, PatternError> {
+        let mut row_start = vec![0_u32];
+        let mut columns = Vec::new();
+        let mut places = Vec::new();
+        for row in &system.rows {
+            let base = columns.len();
+            let mut sorted = row.variables().to_vec();
+            sorted.sort_unstable();
+            sorted.dedup();
+            for variable in row.variables() {
+                let place = sorted.partition_point(|other| other < variable);
+                places.push((base + place) as u32);
+            }
+            columns.extend_from_slice(&sorted);
+            row_start.push(columns.len() as u32);
+        }
+        let pattern = Pattern::new(system.variables.len(), row_start, columns)?;
+        Ok(Self {
+            variables: system.variables,
+            rows: system.rows,
+            streams: system.streams,
+            pattern,
+            places,
+            cache: Cache::default(),
+        })
+    }
+
+    /// Number of variables.
+    pub fn variables(&self) -> usize {
+        self.variables.len()
+    }
+
+    /// Number of rows.
+    pub fn rows(&self) -> usize {
+        self.rows.len()
+    }
+
+    /// Number of the variable with this name.
+    pub fn find(&self, name: &str) -> Option<u32> {
+        self.variables.iter().position(|variable| variable.name == name).map(|id| id as u32)
+    }
+
+    /// A situation without observations: what is exact by its nature or by the plant file is exact.
+    pub fn situation(&self) -> Situation {
+        let exact = self.variables.iter().map(|variable| match variable.knowledge {
+            Knowledge::Exact(value) => Some(value),
+            Knowledge::Free => None,
+        });
+        Situation { exact: exact.collect(), observations: Vec::new() }
+    }
+}
+
+/// One observed value of a variable.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Observation {
+    /// The variable.
+    pub variable: u32,
+    /// Its observed value, SI.
+    pub value: f64,
+    /// Standard uncertainty, positive.
+    pub sigma: f64,
+    /// The part of it that is drawn anew each period, where known.
+    pub repeat: Option<f64>,
+}
+
+/// What one balance knows: which variables are exact, and what was observed. The masks and weights of a balance are
+/// nothing else.
+#[derive(Clone, Debug, Default)]
+pub struct Situation {
+    /// For each variable the value it is fixed at, or nothing where it is free.
+    pub exact: Vec<Option<f64>>,
+    /// Observations; several may be of one variable.
+    pub observations: Vec<Observation>,
+}
+
+impl Situation {
+    /// Sum of the weights `1/sigma^2` on each variable, and their weighted mean.
+    pub(crate) fn weights(&self) -> (Vec<f64>, Vec<f64>) {
+        let mut weight = vec![0.0; self.exact.len()];
+        let mut mean = vec![0.0; self.exact.len()];
+        for observation in &self.observations {
+            let w = observation.sigma.powi(-2);
+            weight[observation.variable as usize] += w;
+            mean[observation.variable as usize] += w * observation.value;
+        }
+        for (mean, weight) in mean.iter_mut().zip(&weight) {
+            if *weight > 0.0 {
+                *mean /= weight;
+            }
+        }
+        (weight, mean)
+    }
+
+    /// Half of what the search for a balance minimises: `1/2 sum ((y - x)/sigma)^2`.
+    pub(crate) fn objective(&self, x: &[f64]) -> f64 {
+        let term = |o: &Observation| ((o.value - x[o.variable as usize]) / o.sigma).powi(2);
+        0.5 * self.observations.iter().map(term).sum::<f64>()
+    }
+}

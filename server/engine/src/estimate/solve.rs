@@ -1,0 +1,520 @@
+//! The solve: Gauss-Newton steps on the equations' KKT system, a filter for the step, an active set for the bounds.
+
+use std::sync::Arc;
+
+use crate::equation::Form;
+use crate::kkt::{Analysis, Column, Diagonal, Factor, Vectors};
+
+use super::bounds::{ActiveSet, Side, blocked, longest};
+use super::cache::{Key, Structure};
+use super::evaluation::{Evaluation, NoValue};
+use super::failure::{Failure, explain};
+use super::linearisation::Linearisation;
+use super::phases;
+use super::problem::{Problem, Situation};
+use super::scaling::{Anchor, Scaling};
+
+/// A state that closes every equation with the least sum of squares.
+pub struct Solution {
+    /// Value of every variable, SI.
+    pub x: Vec<f64>,
+    /// The formula each stream holds.
+    pub forms: Vec<Form>,
+    /// Steps it took.
+    pub iterations: u32,
+    /// Variables that lie at a bound.
+    pub at_bound: Vec<u32>,
+    /// Remarks on phases that were left where they are doubtful.
+    pub remarks: Vec<String>,
+    /// The problem linearised at the solution.
+    pub linearisation: Linearisation,
+}
+
+/// Largest number of steps from one start.
+const MOST_STEPS: u32 = 60;
+/// Rounds of the active set and of phase changes together.
+const MOST_ROUNDS: usize = 25;
+/// Changes of phase that are tried.
+const MOST_PHASE_CHANGES: usize = 5;
+/// A solve has converged when the error left after its last step, extrapolated from the steps' ratio, is this many
+/// sigmas (a thousandth of its scale for what isn't observed).
+const STEP_TOLERANCE: f64 = 1e-8;
+/// After a step this large, in sigmas, the factor is made anew.
+const STALE_STEP: f64 = 0.5;
+/// So is it when steps shrink no faster than this.
+const STALE_RATE: f64 = 0.05;
+/// Each equation closes to this much of its largest term.
+pub(super) const CLOSURE: f64 = 1e-9;
+
+/// Solves from an anchor.
+///
+/// # Errors
+/// [`Failure`], which says what pulls apart.
+pub fn solve(problem: &Problem, situation: &Situation, anchor: &Anchor) -> Result<Solution, Failure> {
+    solve_from(problem, situation, anchor, anchor.x.clone(), anchor.forms.clone())
+}
+
+/// Solves from any start, with the scales and the structure of an anchor.
+///
+/// # Errors
+/// [`Failure`], which says what pulls apart.
+pub fn solve_from(
+    problem: &Problem,
+    situation: &Situation,
+    anchor: &Anchor,
+    start: Vec<f64>,
+    forms: Vec<Form>,
+) -> Result<Solution, Failure> {
+    let mut search = Search::new(problem, situation, anchor, start, forms);
+    let mut best = search.solve_phase()?;
+    for _ in 0..MOST_PHASE_CHANGES {
+        let Some((x, forms)) = phases::changed(problem, &best.x, &best.forms, best.linearisation.touched())
+        else {
+            break;
+        };
+        let mut again = Search::new(problem, situation, anchor, x, forms);
+        match again.solve_phase() {
+            Ok(other)
+                if situation.objective(&other.x) <= situation.objective(&best.x) * (1.0 + 1e-9) + 1e-9 =>
+            {
+                let iterations = best.iterations;
+                best = other;
+                best.iterations += iterations;
+            }
+            _ => break,
+        }
+    }
+    best.remarks = phases::remarks(problem, &best.x, &best.forms, best.linearisation.touched());
+    Ok(best)
+}
+
+/// One search for a solution with the forms held.
+struct Search<'a> {
+    problem: &'a Problem,
+    situation: &'a Situation,
+    anchor: &'a Anchor,
+    weight: Vec<f64>,
+    mean: Vec<f64>,
+    x: Vec<f64>,
+    forms: Vec<Form>,
+    active: ActiveSet,
+    here: Evaluation,
+    /// Scaled derivatives of the equations at the point reached.
+    values: Vec<f64>,
+    /// Scaled multipliers of the equations.
+    multipliers: Vec<f64>,
+    iterations: u32,
+}
+
+/// Why one structure didn't lead to a solution.
+enum Trouble {
+    /// The pivots or ranks found at the anchor don't suit the point reached.
+    Structure,
+    /// A pressure or temperature ran into its limit.
+    Blocked(u32, Side),
+    /// It can't go on.
+    Stuck,
+}
+
+impl<'a> Search<'a> {
+    fn new(
+        problem: &'a Problem,
+        situation: &'a Situation,
+        anchor: &'a Anchor,
+        mut x: Vec<f64>,
+        forms: Vec<Form>,
+    ) -> Self {
+        for (value, exact) in x.iter_mut().zip(&situation.exact) {
+            if let Some(exact) = exact {
+                *value = *exact;
+            }
+        }
+        let (weight, mean) = situation.weights();
+        let (active, here, values) = (ActiveSet::default(), Evaluation::default(), Vec::new());
+        Self {
+            problem,
+            situation,
+            anchor,
+            weight,
+            mean,
+            x,
+            forms,
+            active,
+            here,
+            values,
+            multipliers: Vec::new(),
+            iterations: 0,
+        }
+    }
+
+    /// Rounds of solving and of mending the active set.
+    fn solve_phase(&mut self) -> Result<Solution, Failure> {
+        let mut local = false;
+        for round in 0..MOST_ROUNDS {
+            let structure = self.structure(local)?;
+            match self.converge(&structure) {
+                Ok(()) => {
+                    let gradient: Vec<f64> = self.pull(&structure.scaling).iter().map(|pull| -pull).collect();
+                    let undetermined = undetermined(&structure.analysis, self.x.len());
+                    let variables = &self.problem.variables;
+                    if self.active.update(variables, &mut self.x, &gradient, &undetermined, round) {
+                        continue;
+                    }
+                    if self.structure_holds(&structure)
+                        && let Ok(linearisation) = self.linearise(structure)
+                    {
+                        return Ok(self.finish(linearisation));
+                    }
+                    if local {
+                        break;
+                    }
+                    local = true;
+                }
+                Err(Trouble::Blocked(variable, side)) => {
+                    self.active.block(&self.problem.variables, &mut self.x, variable, side);
+                }
+                Err(Trouble::Structure) if !local => local = true,
+                Err(Trouble::Structure | Trouble::Stuck) => break,
+            }
+        }
+        Err(explain(self.problem, self.situation, self.anchor, &self.x, &self.forms))
+    }
+
+    /// The structure for the masks and forms at hand: the anchor's where it serves, else one of this point alone.
+    fn structure(&mut self, local: bool) -> Result<Arc<Structure>, Failure> {
+        let columns: Vec<u8> = (0..self.x.len()).map(|j| self.column_kind(j)).collect();
+        if local {
+            return self.analyse(&columns, None);
+        }
+        let key = Key { anchor: self.anchor.id, columns, forms: self.forms.clone() };
+        if let Some(found) = self.problem.cache.get(&key) {
+            return Ok(found);
+        }
+        match self.analyse(&key.columns, Some(self.anchor)) {
+            Ok(made) => {
+                self.problem.cache.put(key, &made);
+                Ok(made)
+            }
+            Err(_) => self.analyse(&key.columns, None),
+        }
+    }
+
+    fn column_kind(&self, variable: usize) -> u8 {
+        let fixed = self.situation.exact[variable].is_some() || self.active.contains(variable as u32);
+        match (fixed, self.weight[variable] > 0.0) {
+            (true, _) => FIXED,
+            (false, true) => WEIGHTED,
+            (false, false) => FREE,
+        }
+    }
+
+    /// Analyses the structure at the anchor, or at the point reached.
+    fn analyse(&self, kinds: &[u8], anchor: Option<&Anchor>) -> Result<Arc<Structure>, Failure> {
+        let point = anchor.map_or(&self.x, |anchor| &anchor.x);
+        let mut evaluation = Evaluation::default();
+        evaluation.at(self.problem, point, &self.forms).map_err(|error| self.no_value(&error))?;
+        let scaling = Scaling::at(self.problem, self.anchor.scale.clone(), &evaluation);
+        let mut values = Vec::new();
+        scaling.jacobian(self.problem, &evaluation, &mut values);
+        let columns: Vec<Column> = kinds
+            .iter()
+            .enumerate()
+            .map(|(j, kind)| match *kind {
+                FIXED => Column::Fixed,
+                FREE => Column::Free,
+                _ => {
+                    let of_anchor = anchor.map_or(0.0, |anchor| anchor.weight[j]);
+                    let weight = if of_anchor > 0.0 { of_anchor } else { self.weight[j] };
+                    Column::Weighted(weight * scaling.column[j].powi(2))
+                }
+            })
+            .collect();
+        let analysis = Analysis::new(&self.problem.pattern, &values, &columns)
+            .map_err(|error| Failure::Numeric { message: error.to_string() })?;
+        let analysis = Arc::new(analysis);
+        let weights: Vec<f64> =
+            columns.iter().map(|column| if let Column::Weighted(w) = column { *w } else { 0.0 }).collect();
+        let mut factor = Factor::new(Arc::clone(&analysis));
+        factor
+            .refactor(&values, &Diagonal::new(&weights))
+            .map_err(|error| Failure::Numeric { message: error.to_string() })?;
+        Ok(Arc::new(Structure { analysis, scaling, factor }))
+    }
+
+    fn no_value(&self, error: &NoValue) -> Failure {
+        Failure::no_value(self.problem, error)
+    }
+
+    /// Steps until they vanish. Each solves the conditions of the least sum of squares, linearised, for increments of
+    /// the variables and of the multipliers, so that a factor made a step earlier, or at the anchor, slows the steps
+    /// down a little and moves the answer not at all.
+    fn converge(&mut self, structure: &Structure) -> Result<(), Trouble> {
+        let scaling = &structure.scaling;
+        let mut factor = structure.factor.clone();
+        let mut fresh = false;
+        let mut renew = false;
+        let mut right = Vectors::zeros(&structure.analysis);
+        let mut step = Vectors::zeros(&structure.analysis);
+        let weights: Vec<f64> = self.weight.iter().zip(&scaling.column).map(|(w, s)| w * s * s).collect();
+        let mut damping = Damping::default();
+        let mut filter = Filter::default();
+        let mut previous = f64::NAN;
+        self.multipliers.clear();
+        self.multipliers.resize(self.problem.rows.len(), 0.0);
+        self.here.at(self.problem, &self.x, &self.forms).map_err(|_| Trouble::Stuck)?;
+        scaling.jacobian(self.problem, &self.here, &mut self.values);
+        for _ in 0..MOST_STEPS {
+            self.iterations += 1;
+            if renew {
+                let damped = damping.columns(&self.x);
+                let diagonal = Diagonal { weights: &weights, damping: &damped, softening: &[] };
+                factor.refactor(&self.values, &diagonal).map_err(|_| Trouble::Structure)?;
+                fresh = true;
+            }
+            right.columns.copy_from_slice(&self.pull(scaling));
+            for (slot, (residual, scale)) in
+                right.rows.iter_mut().zip(self.here.residual.iter().zip(&scaling.row))
+            {
+                *slot = -residual * scale;
+            }
+            factor.solve(&right, &mut step).map_err(|_| Trouble::Structure)?;
+            if !step.columns.iter().all(|value| value.is_finite()) {
+                return Err(Trouble::Structure);
+            }
+            let size = self.step_size(scaling, &step.columns);
+            if let Some((variable, side)) = blocked(&self.problem.variables, &self.x, &step, scaling) {
+                return Err(Trouble::Blocked(variable, side));
+            }
+            if !self.advance(scaling, &step, size, &mut filter) {
+                if fresh && !damping.raise() {
+                    return Err(Trouble::Stuck);
+                }
+                renew = true;
+                continue;
+            }
+            scaling.jacobian(self.problem, &self.here, &mut self.values);
+            let rate = if previous.is_finite() { (size / previous).min(1.0) } else { 1.0 };
+            if damping.is_zero() && size * rate < STEP_TOLERANCE {
+                return self.close(scaling, &mut factor);
+            }
+            renew = size > STALE_STEP || rate > STALE_RATE && previous.is_finite() || damping.lower();
+            fresh = false;
+            previous = size;
+        }
+        Err(Trouble::Stuck)
+    }
+
+    /// What pulls at each variable, scaled: the readings against the multipliers of the equations. It vanishes for
+    /// free variables at the solution; for a fixed one it says what its bound or exact value holds back.
+    fn pull(&self, scaling: &Scaling) -> Vec<f64> {
+        let reading = |j: usize| self.weight[j] * (self.mean[j] - self.x[j]) * scaling.column[j];
+        let mut pull: Vec<f64> = (0..self.x.len()).map(reading).collect();
+        for (row, multiplier) in
+            self.multipliers.iter().enumerate().filter(|(_, multiplier)| **multiplier != 0.0)
+        {
+            let range = self.problem.pattern.range(row);
+            for (value, column) in self.values[range].iter().zip(self.problem.pattern.row(row)) {
+                pull[*column as usize] -= value * multiplier;
+            }
+        }
+        pull
+    }
+
+    /// Largest component of a step, in sigmas where observed and in thousandths of the scale elsewhere.
+    fn step_size(&self, scaling: &Scaling, step: &[f64]) -> f64 {
+        let component = |(j, value): (usize, &f64)| {
+            let moved = value.abs() * scaling.column[j];
+            if self.weight[j] > 0.0 {
+                moved * self.weight[j].sqrt()
+            } else {
+                1e3 * moved / scaling.column[j].max(self.x[j].abs())
+            }
+        };
+        step.iter().enumerate().map(component).fold(0.0, f64::max)
+    }
+
+    /// Moves along a step as far as the filter lets it.
+    fn advance(&mut self, scaling: &Scaling, step: &Vectors<f64>, size: f64, filter: &mut Filter) -> bool {
+        let now = (self.infeasibility(scaling), self.situation.objective(&self.x));
+        let from = self.x.clone();
+        let mut share = longest(&self.problem.variables, &from, &step.columns, scaling);
+        for _ in 0..9 {
+            for (j, value) in self.x.iter_mut().enumerate() {
+                *value = from[j] + share * step.columns[j] * scaling.column[j];
+            }
+            if self.here.at(self.problem, &self.x, &self.forms).is_ok() {
+                let then = (self.infeasibility(scaling), self.situation.objective(&self.x));
+                if size < 1e-2 || filter.accepts(then, now) {
+                    filter.add(now);
+                    for (multiplier, change) in self.multipliers.iter_mut().zip(&step.rows) {
+                        *multiplier += share * change;
+                    }
+                    return true;
+                }
+            }
+            share *= 0.5;
+        }
+        self.x = from;
+        // This point was accepted before, so that it has a value; the evaluation must be its own again.
+        let _ = self.here.at(self.problem, &self.x, &self.forms);
+        false
+    }
+
+    fn infeasibility(&self, scaling: &Scaling) -> f64 {
+        self.here.residual.iter().zip(&scaling.row).map(|(c, s)| (c * s).abs()).sum()
+    }
+
+    /// Steps onto the equations alone.
+    fn close(&mut self, scaling: &Scaling, factor: &mut Factor<f64>) -> Result<(), Trouble> {
+        let mut right = Vectors::zeros(factor.analysis());
+        let mut step = Vectors::zeros(factor.analysis());
+        for _ in 0..3 {
+            if self.here.worst().0 < CLOSURE * 1e-4 {
+                break;
+            }
+            for (slot, (residual, scale)) in
+                right.rows.iter_mut().zip(self.here.residual.iter().zip(&scaling.row))
+            {
+                *slot = -residual * scale;
+            }
+            factor.solve(&right, &mut step).map_err(|_| Trouble::Structure)?;
+            for (value, (change, scale)) in self.x.iter_mut().zip(step.columns.iter().zip(&scaling.column)) {
+                *value += change * scale;
+            }
+            self.here.at(self.problem, &self.x, &self.forms).map_err(|_| Trouble::Stuck)?;
+        }
+        scaling.jacobian(self.problem, &self.here, &mut self.values);
+        Ok(())
+    }
+
+    /// Whether what the structure took for dependent is so at the solution: dropped rows close, and directions that
+    /// nothing determines still change no equation.
+    fn structure_holds(&self, structure: &Structure) -> bool {
+        let closes = self.here.worst().0 < CLOSURE;
+        closes
+            && structure.analysis.null_vectors().iter().all(|vector| self.is_null(structure, vector.column))
+    }
+
+    /// A held column that had no coefficients where the structure was analysed must have none here.
+    fn is_null(&self, structure: &Structure, column: u32) -> bool {
+        let vectors = structure.analysis.null_vectors();
+        let Some(vector) = vectors.iter().find(|vector| vector.column == column) else { return true };
+        if vector.parts.len() > 1 {
+            return true;
+        }
+        let scaling = &structure.scaling;
+        (0..self.problem.rows.len()).all(|row| {
+            let range = self.problem.pattern.range(row);
+            range.zip(self.problem.pattern.row(row)).all(|(place, other)| {
+                let scaled = self.here.jacobian[place] * scaling.column[column as usize] * scaling.row[row];
+                *other != column || scaled.abs() < 1e-9
+            })
+        })
+    }
+
+    /// The linearisation at the solution. Uncertainties ignore active bounds: with any, the structure is that without.
+    fn linearise(&mut self, structure: Arc<Structure>) -> Result<Linearisation, Failure> {
+        let counted = (0..self.x.len()).filter(|j| self.column_kind(*j) == WEIGHTED).count();
+        // Observations beyond what they determine: those that the structure counts once a variable, each of the others
+        // on the same variable, and all of exact variables and of those at a bound.
+        let degrees_of_freedom = (self.situation.observations.len()
+            + structure.analysis.degrees_of_freedom())
+        .saturating_sub(counted);
+        let structure = if self.active.is_empty() {
+            structure
+        } else {
+            let held = std::mem::take(&mut self.active);
+            let columns: Vec<u8> = (0..self.x.len()).map(|j| self.column_kind(j)).collect();
+            self.active = held;
+            let free = self.analyse(&columns, None)?;
+            free.scaling.jacobian(self.problem, &self.here, &mut self.values);
+            free
+        };
+        let undefined = self.here.undefined.iter().map(|row| self.problem.rows[*row as usize].variables()[0]);
+        let values = std::mem::take(&mut self.values);
+        Linearisation::new(structure, &values, self.situation, degrees_of_freedom, undefined.collect())
+            .map_err(|error| Failure::Numeric { message: error.to_string() })
+    }
+
+    fn finish(&mut self, linearisation: Linearisation) -> Solution {
+        Solution {
+            x: std::mem::take(&mut self.x),
+            forms: std::mem::take(&mut self.forms),
+            iterations: self.iterations,
+            at_bound: self.active.variables(),
+            remarks: Vec::new(),
+            linearisation,
+        }
+    }
+}
+
+/// Which variables the null vectors of an analysis move.
+pub(super) fn undetermined(analysis: &Analysis, variables: usize) -> Vec<bool> {
+    let mut moved = vec![false; variables];
+    for vector in analysis.null_vectors() {
+        let largest = vector.parts.iter().map(|(_, part)| part.abs()).fold(0.0, f64::max);
+        for (column, part) in &vector.parts {
+            moved[*column as usize] |= part.abs() > NULL_PART * largest;
+        }
+    }
+    moved
+}
+
+/// A part of a null vector this small against its largest is rounding: ranks are clean, with a gap of nine decades.
+const NULL_PART: f64 = 1e-9;
+
+const FREE: u8 = 0;
+const WEIGHTED: u8 = 1;
+const FIXED: u8 = 2;
+
+/// Proximal damping of a step, zero unless steps fail.
+#[derive(Default)]
+struct Damping {
+    strength: f64,
+}
+
+impl Damping {
+    fn is_zero(&self) -> bool {
+        self.strength == 0.0
+    }
+
+    /// Raises it; false when that makes no sense any more.
+    fn raise(&mut self) -> bool {
+        self.strength = if self.strength == 0.0 { 1e-4 } else { self.strength * 100.0 };
+        self.strength < 1e8
+    }
+
+    /// Lowers it; says whether there was any.
+    fn lower(&mut self) -> bool {
+        let any = !self.is_zero();
+        self.strength = if self.strength < 1e-5 { 0.0 } else { self.strength * 0.1 };
+        any
+    }
+
+    fn columns(&self, x: &[f64]) -> Vec<f64> {
+        if self.is_zero() { Vec::new() } else { vec![self.strength; x.len()] }
+    }
+}
+
+/// Pairs of infeasibility and objective that a new point must not be dominated by: R. Fletcher and S. Leyffer,
+/// "Nonlinear programming without a penalty function", Mathematical Programming 91 (2002) 239-269.
+#[derive(Default)]
+pub(super) struct Filter {
+    entries: Vec<(f64, f64)>,
+}
+
+impl Filter {
+    pub(super) fn accepts(&self, then: (f64, f64), now: (f64, f64)) -> bool {
+        let better = |(theta, phi): (f64, f64)| {
+            then.0 <= (1.0 - 1e-4) * theta || then.1 <= phi - 1e-4 * theta || then.0 < 1e-9
+        };
+        then.0.is_finite()
+            && then.1.is_finite()
+            && better(now)
+            && self.entries.iter().all(|entry| better(*entry))
+    }
+
+    pub(super) fn add(&mut self, entry: (f64, f64)) {
+        self.entries.push(entry);
+    }
+}

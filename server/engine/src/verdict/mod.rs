@@ -1,0 +1,7 @@
+//! What the corrections say: the global test, the measurement test and what they could have seen.
+
+mod limits;
+mod statistics;
+
+pub(crate) use limits::Limits;
+pub(crate) use statistics::{Judged, Residual, global_test, judge};

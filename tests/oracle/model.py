@@ -123,7 +123,7 @@ class Model:
     def __init__(self, path, readings=None, targets=None, starts=None):
         with open(path, "rb") as file:
             self.plant = tomllib.load(file)
-        self.variables, self.equations, self.measurements, self.derived = {}, [], [], {}
+        self.variables, self.equations, self.measurements, self.derived, self.exact = {}, [], [], {}, {}
         self.starts = dict(starts or {})
         self.given = self.plant.get("given", {})
         self.used_givens = set()
@@ -619,6 +619,7 @@ class Model:
                 self._measure(name, name, self.quantity(name), value, self._given_sigma(given))
             else:
                 value = units.amount(given)
+                self.exact[name] = value
                 self.equation(f"{name}: given", self.quantity(name) - value, max(abs(value), 1e4))
 
     def _tags(self, readings):

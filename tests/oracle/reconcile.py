@@ -52,6 +52,8 @@ def balance_row(balance, parameters):
     assert abs(balance.redundancies.sum() - degrees) < 1e-6
     stored, unobservable = {}, []
     for name, value, spread, free in zip(balance.quantities, values, sigma, touched):
+        if name in balance.model.exact:
+            value, spread = balance.model.exact[name], 0.0
         if free or spread > limit(balance, name, value):
             unobservable.append(name)
         else:

@@ -1,3 +1,7 @@
 //! The `meterwright` program.
 
-fn main() {}
+use std::process::ExitCode;
+
+fn main() -> ExitCode {
+    meterwright::command::run(std::env::args_os())
+}

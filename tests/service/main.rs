@@ -1,6 +1,8 @@
 //! The service from outside: logs as files, periods, and the program as people and scripts run it.
 
+mod command_line;
 mod files;
 mod log_faults;
 mod log_forms;
+mod period_means;
 mod times;

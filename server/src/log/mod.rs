@@ -27,6 +27,8 @@ pub use layout::Note;
 pub use quality::Sample;
 pub use time::TimeError;
 
+pub(crate) use time::{Instants, WrittenTime, instants};
+
 use cell::{Cell, DecimalMark};
 use layout::{Layout, Shape};
 use long::{LongColumns, LongSample};

@@ -1,0 +1,275 @@
+//! `meterwright reconcile`: a plant file and a log in, balances out.
+
+use std::fmt::Display;
+use std::fs;
+use std::io::{self, BufWriter, Write};
+use std::path::{Path, PathBuf};
+
+use clap::{Args, ValueEnum};
+use jiff::tz::TimeZone;
+use meterwright_engine::plant::{self, Plant};
+use meterwright_engine::{Balance, CompiledPlant, Fault, Outcome, Position};
+
+use super::Status;
+use crate::log::{Expectation, Instants, Log, LogFaults, WrittenTime, instants};
+use crate::parallel;
+use crate::period::{Period, PeriodRule, Periods, Window, periods};
+use crate::report::{JsonReport, Labels, Report, TextReport};
+
+/// Balance the readings of a log within their uncertainties
+#[derive(Args, Debug)]
+pub(super) struct Arguments {
+    /// The plant file
+    plant: PathBuf,
+    /// The log: CSV, TSV or XLSX, plain or compressed with gzip or Zstandard
+    log: PathBuf,
+    /// Write one JSON object instead of a report
+    #[arg(long)]
+    json: bool,
+    /// What makes a period: a steady stretch, each row (averaged already), or the whole log averaged into one
+    #[arg(long, value_enum, default_value_t = PeriodChoice::Steady)]
+    periods: PeriodChoice,
+    /// Balance with every tag as it stands and look for no errors
+    #[arg(long)]
+    no_search: bool,
+    /// Leave out what comes before this time (RFC 3339, or local time of the plant)
+    #[arg(long, value_name = "TIME")]
+    from: Option<String>,
+    /// Leave out this time and what comes after it
+    #[arg(long, value_name = "TIME")]
+    to: Option<String>,
+}
+
+#[derive(Clone, Copy, Debug, ValueEnum)]
+enum PeriodChoice {
+    Steady,
+    Row,
+    Whole,
+}
+
+/// Why there is nothing more to write.
+enum Stop {
+    /// The input is wrong: one line a fault, with its place.
+    Input(Vec<String>),
+    /// The arguments are wrong.
+    Usage(String),
+    /// The output can't be written.
+    Output(io::Error),
+}
+
+/// How many balances were made and how many of them converged.
+#[derive(Default)]
+struct Tally {
+    made: usize,
+    converged: usize,
+}
+
+/// So many periods are balanced before they are written: enough to keep all cores busy, few enough to be held at once.
+const BATCH: usize = 64;
+
+pub(super) fn run(arguments: &Arguments) -> Status {
+    match reconcile(arguments) {
+        Ok(Tally { converged: 0, .. }) => Status::NotOneConverged,
+        Ok(_) => Status::Done,
+        Err(Stop::Output(error)) if error.kind() == io::ErrorKind::BrokenPipe => Status::Done,
+        Err(Stop::Output(error)) => {
+            say(format_args!("the result can't be written: {error}"));
+            Status::WrongInput
+        }
+        Err(Stop::Input(faults)) => {
+            faults.iter().for_each(say);
+            Status::WrongInput
+        }
+        Err(Stop::Usage(message)) => {
+            say(format_args!("{message}"));
+            Status::WrongUsage
+        }
+    }
+}
+
+fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
+    let rule = rule(arguments)?;
+    let text = read(&arguments.plant)?;
+    let at = |faults: Vec<Fault>| plant_faults(&arguments.plant, &text, &faults);
+    let plant = plant::parse(&text).map_err(|faults| Stop::Input(at(faults)))?;
+    let (compiled, expectation) = understand(&plant).map_err(|faults| Stop::Input(at(faults)))?;
+    let zone = expectation.zone.clone();
+    let window =
+        Window { from: time(arguments.from.as_deref(), &zone)?, to: time(arguments.to.as_deref(), &zone)? };
+    let in_log = |faults| Stop::Input(log_faults(&arguments.log, &faults));
+    let log = Log::open(&arguments.log, expectation).map_err(in_log)?;
+    let counters = counters(&plant, &log);
+    if !counters.is_empty() {
+        return Err(Stop::Input(at(counters)));
+    }
+    let notes = notes(&arguments.log, &log);
+    notes.iter().for_each(say);
+    let labels = Labels::from(&compiled);
+    let (plant_name, revision) = (plant.name.value.as_str(), plant.revision.as_str());
+    let report: Box<dyn Report> = if arguments.json {
+        Box::new(JsonReport { plant: plant_name, revision, labels })
+    } else {
+        Box::new(TextReport { plant: plant_name, revision, zone: &zone, labels })
+    };
+    let periods = periods(rule, &log, window).map_err(in_log)?;
+    let run = Run { compiled: &compiled, report: &*report, log: &arguments.log };
+    run.balance_all(periods, notes)
+}
+
+/// What this version can do of what is asked for.
+fn rule(arguments: &Arguments) -> Result<PeriodRule, Stop> {
+    match arguments.periods {
+        PeriodChoice::Row if arguments.no_search => Ok(PeriodRule::Row),
+        PeriodChoice::Whole if arguments.no_search => Ok(PeriodRule::Whole),
+        _ => Err(Stop::Usage(
+            "this version looks for no errors and finds no steady periods: add --no-search, and --periods row (each row \
+             is one period) or --periods whole (the log is averaged into one)"
+                .to_owned(),
+        )),
+    }
+}
+
+fn read(path: &Path) -> Result<String, Stop> {
+    let fault =
+        |reason: &dyn Display| Stop::Input(vec![format!("{}:1:1: can't be read: {reason}", path.display())]);
+    fs::read_to_string(path).map_err(|error| fault(&error))
+}
+
+/// Compiles the plant and makes out what its logs look like; all faults of both.
+fn understand(plant: &Plant) -> Result<(CompiledPlant, Expectation), Vec<Fault>> {
+    match (CompiledPlant::compile(plant), Expectation::of(plant)) {
+        (Ok(compiled), Ok(expectation)) => Ok((compiled, expectation)),
+        (compiled, expectation) => {
+            Err(compiled.err().into_iter().flatten().chain(expectation.err()).collect())
+        }
+    }
+}
+
+/// The instant that an argument names.
+fn time(argument: Option<&str>, zone: &TimeZone) -> Result<Option<jiff::Timestamp>, Stop> {
+    let Some(text) = argument else { return Ok(None) };
+    let no_time = || crate::log::TimeError::NotATime(text.to_owned());
+    let written = WrittenTime::of_text(text).ok_or_else(no_time);
+    match written.and_then(|written| instants(written, zone)) {
+        Ok(Instants::One(instant)) => Ok(Some(instant)),
+        Ok(Instants::Two(earlier, later)) => Err(Stop::Usage(format!(
+            "{text} comes twice in the plant's zone, as clocks go back; write {earlier} or {later}"
+        ))),
+        Err(error) => Err(Stop::Usage(error.to_string())),
+    }
+}
+
+/// Counters of which the log has samples.
+fn counters(plant: &Plant, log: &Log) -> Vec<Fault> {
+    let tags = plant.tags.iter().zip(&log.expectation().tags).zip(log.has_samples());
+    tags.filter(|((_, expected), has_samples)| expected.is_counter && **has_samples)
+        .map(|((tag, _), _)| Fault {
+            span: tag.name.span,
+            message: format!(
+                "`{}` is a counter: what it reads is the rate over a steady period, which this version doesn't find; leave \
+                 its column out of the log",
+                tag.name.value
+            ),
+        })
+        .collect()
+}
+
+fn plant_faults(path: &Path, text: &str, faults: &[Fault]) -> Vec<String> {
+    let line = |fault: &Fault| {
+        let Position { line, column } = Position::of(text, fault.span.start);
+        format!("{}:{line}:{column}: {fault}", path.display())
+    };
+    let mut faults = faults.to_vec();
+    faults.sort();
+    faults.iter().map(line).collect()
+}
+
+fn log_faults(path: &Path, faults: &LogFaults) -> Vec<String> {
+    let mut lines: Vec<String> =
+        faults.first.iter().map(|fault| format!("{}:{fault}", path.display())).collect();
+    if faults.beyond > 0 {
+        lines.push(format!("{}: and {} faults more", path.display(), faults.beyond));
+    }
+    lines
+}
+
+fn notes(path: &Path, log: &Log) -> Vec<String> {
+    let line = |note: &crate::log::Note| {
+        format!("{}:{}:{}: warning: {}", path.display(), note.line, note.column, note.message)
+    };
+    log.notes().iter().map(line).collect()
+}
+
+/// Everything it takes to balance period after period and write them down.
+struct Run<'r> {
+    compiled: &'r CompiledPlant,
+    report: &'r dyn Report,
+    log: &'r Path,
+}
+
+impl Run<'_> {
+    /// Balances all periods and writes each as it is finished. What is to be known of the log as a whole goes with the
+    /// first balance.
+    fn balance_all(&self, periods: Periods<'_>, notes: Vec<String>) -> Result<Tally, Stop> {
+        let mut periods = periods.peekable();
+        if periods.peek().is_none() {
+            let fault = format!("{}:1:1: no row lies between the times given", self.log.display());
+            return Err(Stop::Input(vec![fault]));
+        }
+        let anchor = match periods.peek() {
+            Some(Ok(first)) => self.compiled.anchor(&first.readings),
+            _ => None,
+        };
+        let mut output = BufWriter::new(io::stdout().lock());
+        let mut tally = Tally::default();
+        let mut notes = Some(notes);
+        output.write_all(&self.report.head()).map_err(Stop::Output)?;
+        loop {
+            let mut batch = self.batch(&mut periods)?;
+            if batch.is_empty() {
+                break;
+            }
+            if let (Some(notes), Some(first)) = (notes.take(), batch.first_mut()) {
+                first.warnings.splice(0..0, notes);
+            }
+            let finished = parallel::map(&batch, |period| {
+                let balance = self.compiled.balance(&period.readings, anchor.as_ref());
+                (self.report.balance(period, &balance), not_found(period, &balance))
+            });
+            for (text, reason) in finished {
+                if tally.made > 0 {
+                    output.write_all(self.report.between()).map_err(Stop::Output)?;
+                }
+                output.write_all(&text).map_err(Stop::Output)?;
+                tally.made += 1;
+                tally.converged += usize::from(reason.is_none());
+                reason.iter().for_each(say);
+            }
+            output.flush().map_err(Stop::Output)?;
+        }
+        output.write_all(self.report.tail()).and_then(|()| output.flush()).map_err(Stop::Output)?;
+        Ok(tally)
+    }
+
+    fn batch(
+        &self,
+        periods: &mut impl Iterator<Item = Result<Period, LogFaults>>,
+    ) -> Result<Vec<Period>, Stop> {
+        let batch: Result<_, LogFaults> = periods.take(BATCH).collect();
+        batch.map_err(|faults| Stop::Input(log_faults(self.log, &faults)))
+    }
+}
+
+/// A line about a period that did not converge.
+fn not_found(period: &Period, balance: &Balance) -> Option<String> {
+    match &balance.outcome {
+        Outcome::Converged => None,
+        Outcome::NotRun => Some(format!("{}: not balanced", period.from)),
+        Outcome::NotFound { reason } => Some(format!("{}: not converged: {reason}", period.from)),
+    }
+}
+
+/// A line on standard error; where that can't be written to, nobody reads it.
+fn say(line: impl Display) {
+    let _ = writeln!(io::stderr(), "{line}");
+}

@@ -1,0 +1,45 @@
+//! Balances as people and scripts read them.
+
+mod json;
+mod number;
+mod table;
+mod text;
+
+use meterwright_engine::{Balance, CompiledPlant, Label};
+
+use crate::period::Period;
+
+pub(crate) use json::JsonReport;
+pub(crate) use text::TextReport;
+
+/// A report is written in pieces: what stands before all balances, each balance as it is finished, what stands after.
+pub(crate) trait Report: Sync {
+    /// What stands before the balances.
+    fn head(&self) -> Vec<u8>;
+    /// One balance. Balances may be put into words on several threads at once.
+    fn balance(&self, period: &Period, balance: &Balance) -> Vec<u8>;
+    /// What stands between two balances.
+    fn between(&self) -> &'static [u8];
+    /// What stands after them.
+    fn tail(&self) -> &'static [u8];
+}
+
+/// Names and units of a plant's tags, soft givens, quantities and indicators, in the order of its balances.
+#[derive(Clone, Copy)]
+pub(crate) struct Labels<'p> {
+    pub(crate) tags: &'p [Label],
+    pub(crate) givens: &'p [Label],
+    pub(crate) quantities: &'p [Label],
+    pub(crate) indicators: &'p [Label],
+}
+
+impl<'p> From<&'p CompiledPlant> for Labels<'p> {
+    fn from(plant: &'p CompiledPlant) -> Self {
+        Self {
+            tags: plant.tags(),
+            givens: plant.givens(),
+            quantities: plant.quantities(),
+            indicators: plant.indicators(),
+        }
+    }
+}

@@ -1,0 +1,366 @@
+//! The program as people and scripts run it: what it writes, and how it ends.
+
+#![expect(clippy::unwrap_used, reason = "a test stops where what it needs can't be had")]
+
+use std::io::Read;
+use std::process::{Command, Output, Stdio};
+
+use serde_json::Value;
+
+use crate::files::{Folder, lines};
+
+/// A line that divides in two, each of the three flows with a meter.
+const PLANT: &str = r#"format = 1
+
+[plant]
+name = "Invented weir"
+time_zone = "Europe/Oslo"
+
+[streams.river]
+fluid = "water"
+to = "weir.inlet.river"
+
+[streams.left]
+fluid = "water"
+from = "weir.outlet.left"
+
+[streams.right]
+fluid = "water"
+from = "weir.outlet.right"
+
+[equipment.weir]
+kind = "header"
+closes = ["mass"]
+
+[tags.FT-1]
+reads = "river.mass_flow"
+unit = "t/h"
+sigma = "1 t/h"
+span = [0, 200]
+
+[tags.FT-2]
+reads = "left.mass_flow"
+unit = "t/h"
+sigma = "1 t/h"
+
+[tags.FT-3]
+reads = "right.mass_flow"
+unit = "t/h"
+sigma = "1 t/h"
+
+[tags.TT-4]
+unit = "degC"
+
+[given]
+"weir.mass_loss" = { value = "0 t/h", sigma = "1 t/h" }
+
+[indicators.left_share]
+formula = "left.mass_flow / river.mass_flow"
+unit = "%"
+"#;
+
+const LOG: &str = "time,FT-1,FT-2,FT-3,TT-4\n\
+                   2026-03-01 07:00,100,60,42,8.5\n\
+                   2026-03-01 08:00,100,60,41,8.5\n";
+
+/// Runs `reconcile` on a plant file and a log.
+fn reconcile(plant: &str, log: &str, arguments: &[&str]) -> (i32, String, String) {
+    let folder = Folder::new();
+    folder.write("plant.toml", plant);
+    folder.write("shift.csv", log);
+    let mut command = Command::new(env!("CARGO_BIN_EXE_meterwright"));
+    command.args(["reconcile", "plant.toml", "shift.csv"]).args(arguments).current_dir(folder.path(""));
+    ended(&command.output().unwrap())
+}
+
+fn ended(output: &Output) -> (i32, String, String) {
+    let text = |bytes: &[u8]| String::from_utf8(bytes.to_vec()).unwrap();
+    (output.status.code().unwrap(), text(&output.stdout), text(&output.stderr))
+}
+
+const BY_ROW: &[&str] = &["--no-search", "--periods", "row"];
+const WHOLE: &[&str] = &["--no-search", "--periods", "whole", "--json"];
+const BY_ROW_JSON: &[&str] = &["--no-search", "--periods", "row", "--json"];
+
+/// The balances of a run that ended well.
+fn balances(log: &str, arguments: &[&str]) -> Vec<Value> {
+    let (status, output, errors) = reconcile(PLANT, log, arguments);
+    assert_eq!(status, 0, "{errors}");
+    let result: Value = serde_json::from_str(&output).unwrap();
+    result["balances"].as_array().unwrap().clone()
+}
+
+/// Every key of a JSON text in its order.
+fn keys(json: &str) -> Vec<&str> {
+    let pieces: Vec<&str> = json.split('"').collect();
+    pieces.windows(2).filter(|pair| pair[1].starts_with(':')).map(|pair| pair[0]).collect()
+}
+
+#[test]
+fn the_json_result_has_the_keys_of_the_contract_in_its_order() {
+    let one_row = LOG.rsplit_once("2026").unwrap().0;
+    let (status, output, errors) = reconcile(PLANT, one_row, BY_ROW_JSON);
+    assert_eq!((status, errors.as_str()), (0, ""));
+    let test = "statistic degrees_of_freedom critical passes";
+    let read = |key| {
+        format!(
+            "{key} quantity unit measured sigma samples reconciled reconciled_sigma correction redundancy statistic \
+             minimum_detectable_bias class verdict"
+        )
+    };
+    let quantity = "quantity value sigma unit repeat_sigma at_bound class";
+    let result: Value = serde_json::from_str(&output).unwrap();
+    let quantities = result["balances"][0]["quantities"].as_array().unwrap().len();
+    assert!(quantities >= 4, "{output}");
+    let contract = format!(
+        "plant revision balances from to converged iterations global_test {test} global_test_after {test} tags {} givens {} \
+         quantities {} findings indicators indicator value sigma repeat_sigma unit out_of_service warnings",
+        vec![read("tag"); 4].join(" "),
+        read("given"),
+        vec![quantity; quantities].join(" "),
+    );
+    assert_eq!(keys(&output).join(" "), contract);
+}
+
+#[test]
+fn a_balance_has_the_numbers_that_can_be_worked_out_by_hand() {
+    let balances = balances(LOG, BY_ROW_JSON);
+    assert_eq!(balances.len(), 2);
+    let first = &balances[0];
+    assert_eq!(
+        (&first["from"], &first["to"]),
+        (&"2026-03-01T06:00:00Z".into(), &"2026-03-01T06:00:00Z".into())
+    );
+    // Imbalance 100 - 60 - 42 - 0 = -2 over four readings of one standard deviation: each moves by a half, J = 4 / 4.
+    let close = |value: &Value, expected: f64| {
+        assert!((value.as_f64().unwrap() - expected).abs() < 1e-9, "{value} is not {expected}");
+    };
+    close(&first["global_test"]["statistic"], 1.0);
+    assert_eq!(first["global_test"], first["global_test_after"]);
+    assert_eq!(first["global_test"]["degrees_of_freedom"], 1);
+    let flow = &first["tags"][0];
+    assert_eq!(
+        (&flow["tag"], &flow["quantity"], &flow["unit"]),
+        (&"FT-1".into(), &"river.mass_flow".into(), &"t/h".into())
+    );
+    close(&flow["measured"], 100.0);
+    close(&flow["reconciled"], 100.5);
+    close(&flow["correction"], 0.5);
+    close(&flow["reconciled_sigma"], 0.75_f64.sqrt());
+    close(&flow["redundancy"], 0.25);
+    close(&flow["statistic"], 1.0);
+    assert_eq!((&flow["class"], &flow["verdict"]), (&"redundant".into(), &"trusted".into()));
+    let bystander = &first["tags"][3];
+    assert_eq!((&bystander["quantity"], &bystander["verdict"]), (&Value::Null, &"excluded".into()));
+    close(&first["givens"][0]["reconciled"], -0.5);
+    close(&first["indicators"][0]["value"], 100.0 * 59.5 / 100.5);
+    close(&balances[1]["global_test"]["statistic"], 0.25);
+    for balance in &balances {
+        assert_eq!(
+            (&balance["findings"], &balance["out_of_service"]),
+            (&Value::Array(vec![]), &Value::Array(vec![]))
+        );
+    }
+}
+
+#[test]
+fn the_whole_log_is_one_balance_from_its_first_to_its_last_sample() {
+    let balances = balances(LOG, WHOLE);
+    assert_eq!(balances.len(), 1);
+    assert_eq!(balances[0]["from"], "2026-03-01T06:00:00Z");
+    assert_eq!(balances[0]["to"], "2026-03-01T07:00:00Z");
+    let flow = &balances[0]["tags"][2];
+    assert_eq!(flow["samples"], 2);
+    assert!((flow["measured"].as_f64().unwrap() - 41.5).abs() < 1e-9);
+    // The stated sigma of 1 and the standard error of 42 and 41, which is a half, add in squares.
+    assert!((flow["sigma"].as_f64().unwrap() - 1.25_f64.sqrt()).abs() < 1e-9);
+}
+
+#[test]
+fn times_restrict_the_log_in_the_plants_zone() {
+    let arguments =
+        [BY_ROW_JSON, &["--from", "2026-03-01 07:30", "--to", "2026-03-01T09:00:00+01:00"]].concat();
+    let balances = balances(LOG, &arguments);
+    assert_eq!(balances.len(), 1);
+    assert_eq!(balances[0]["from"], "2026-03-01T07:00:00Z");
+    let arguments = [BY_ROW_JSON, &["--from", "2027-01-01 00:00"]].concat();
+    let (status, output, errors) = reconcile(PLANT, LOG, &arguments);
+    assert_eq!((status, output.as_str()), (1, ""));
+    assert_eq!(errors, "shift.csv:1:1: no row lies between the times given\n");
+}
+
+#[test]
+fn what_no_tag_knows_is_told_on_both_ways_out() {
+    let log = LOG.replace("TT-4", "TT-5");
+    let (status, output, errors) = reconcile(PLANT, &log, BY_ROW_JSON);
+    let unknown = "shift.csv:1:5: warning: column `TT-5` is not read: no tag of the plant file has this name; did you mean \
+                   `TT-4`?";
+    let missing = "shift.csv:1:1: warning: the log has no samples of TT-4";
+    assert_eq!((status, errors), (0, format!("{unknown}\n{missing}\n")));
+    let result: Value = serde_json::from_str(&output).unwrap();
+    assert_eq!(result["balances"][0]["warnings"], serde_json::json!([unknown, missing]));
+    assert_eq!(result["balances"][1]["warnings"], serde_json::json!([]));
+}
+
+#[test]
+fn the_report_is_for_people_and_ends_with_the_cautions() {
+    let (status, output, errors) = reconcile(PLANT, LOG, BY_ROW);
+    assert_eq!((status, errors.as_str()), (0, ""));
+    assert!(output.lines().all(|line| line.chars().count() <= 100), "{output}");
+    for said in [
+        "Invented weir, plant file ",
+        "2026-03-01 07:00:00 +01:00",
+        "FT-1  t/h   100.0  2.0     100.5  1.7     0.5  1.00  agrees (would show from 6.7 t/h)",
+        "left.mass_flow    59.5  1.7  t/h   read by FT-2",
+        "in no balance",
+        "left_share   59.2",
+    ] {
+        assert!(output.contains(said), "{said} is missing in\n{output}");
+    }
+    assert!(
+        output.ends_with(
+            "Advice to engineers, not a protection, custody-transfer or safety system. Isolate and lock out\n\
+             before touching an instrument. Local codes and licensed practice come first.\n"
+        ),
+        "{output}"
+    );
+}
+
+#[test]
+fn the_worst_meter_stands_first() {
+    let log = "time,FT-1,FT-2,FT-3\n2026-03-01 07:00,100,60,50\n";
+    let plant = PLANT.replace(
+        "left.mass_flow\"\nunit = \"t/h\"\nsigma = \"1 t/h\"",
+        "left.mass_flow\"\nunit = \"t/h\"\nsigma = \"0.1 t/h\"",
+    );
+    let (_, output, _) = reconcile(&plant, log, BY_ROW);
+    let table: Vec<&str> =
+        output.lines().skip_while(|line| !line.starts_with("Tag")).skip(1).take(4).collect();
+    assert!(table[0].contains("SUSPECT"), "{output}");
+    assert!(table[3].starts_with("TT-4"), "{output}");
+}
+
+#[test]
+fn a_wrong_input_is_told_fault_by_fault_and_nothing_is_written() {
+    let plant_faults =
+        PLANT.replace("Europe/Oslo", "Europe/Olso").replace("river.mass_flow\"", "river.mass_flo\"");
+    let (status, output, errors) = reconcile(&plant_faults, LOG, BY_ROW_JSON);
+    assert_eq!((status, output.as_str()), (1, ""));
+    let told: Vec<&str> = errors.lines().collect();
+    assert!(
+        told.iter().any(|line| line.starts_with("plant.toml:5:14: `Europe/Olso` is not a time zone")),
+        "{errors}"
+    );
+    assert!(
+        told.iter().any(|line| line.starts_with("plant.toml:24:10: unknown quantity `mass_flo`")),
+        "{errors}"
+    );
+
+    let log_faults = LOG.replace("60,42", "sixty,42").replace("100,60,41", "100,60,4l");
+    let (status, output, errors) = reconcile(PLANT, &log_faults, BY_ROW_JSON);
+    assert_eq!((status, output.as_str()), (1, ""));
+    assert_eq!(
+        errors,
+        "shift.csv:2:3: FT-2: `sixty` is not a number\nshift.csv:3:4: FT-3: `4l` is not a number\n"
+    );
+}
+
+#[test]
+fn files_that_are_not_there_are_faults_too() {
+    let output = Command::new(env!("CARGO_BIN_EXE_meterwright"))
+        .args(["reconcile", "no-plant.toml", "no-log.csv"])
+        .args(BY_ROW)
+        .output()
+        .unwrap();
+    let (status, _, errors) = ended(&output);
+    assert_eq!(status, 1);
+    assert!(errors.starts_with("no-plant.toml:1:1: can't be read: "), "{errors}");
+}
+
+#[test]
+fn a_counter_needs_a_version_that_finds_steady_periods() {
+    let counter = PLANT.replace(
+        "[tags.TT-4]\nunit = \"degC\"",
+        "[tags.TT-4]\nunit = \"degC\"\ncounter = { roll_over = 100 }",
+    );
+    let (status, _, errors) = reconcile(&counter, LOG, BY_ROW_JSON);
+    assert_eq!(status, 1);
+    assert!(errors.contains("`TT-4` is a counter: "), "{errors}");
+    let mut without_it = LOG.lines().map(|line| line.rsplit_once(',').unwrap().0.to_owned());
+    let first = without_it.next().unwrap();
+    assert_eq!(reconcile(&counter, &lines(&first, without_it), BY_ROW_JSON).0, 0);
+}
+
+#[test]
+fn wrong_usage_is_told_in_a_line() {
+    let not_yet = "this version looks for no errors and finds no steady periods: add --no-search, and --periods row (each row is \
+                   one period) or --periods whole (the log is averaged into one)\n";
+    for arguments in
+        [&[][..], &["--no-search"], &["--periods", "row"], &["--no-search", "--periods", "steady", "--json"]]
+    {
+        assert_eq!(reconcile(PLANT, LOG, arguments), (2, String::new(), not_yet.to_owned()), "{arguments:?}");
+    }
+    let arguments = [BY_ROW, &["--from", "2026-10-25 02:30"]].concat();
+    let twice = "2026-10-25 02:30 comes twice in the plant's zone, as clocks go back; write 2026-10-25T00:30:00Z or \
+                 2026-10-25T01:30:00Z\n";
+    assert_eq!(reconcile(PLANT, LOG, &arguments), (2, String::new(), twice.to_owned()));
+    let arguments = [BY_ROW, &["--to", "noon"]].concat();
+    let (status, _, errors) = reconcile(PLANT, LOG, &arguments);
+    assert_eq!((status, errors.starts_with("`noon` is not a time")), (2, true));
+    assert_eq!(reconcile(PLANT, LOG, &["--periods", "shift"]).0, 2);
+    assert_eq!(reconcile(PLANT, LOG, &["--frobnicate"]).0, 2);
+}
+
+#[test]
+fn help_ends_well_and_names_every_option() {
+    let output =
+        Command::new(env!("CARGO_BIN_EXE_meterwright")).args(["reconcile", "--help"]).output().unwrap();
+    let (status, help, _) = ended(&output);
+    assert_eq!(status, 0);
+    for option in ["--json", "--periods", "--no-search", "--from", "--to"] {
+        assert!(help.contains(option), "{help}");
+    }
+}
+
+#[test]
+fn a_log_of_which_nothing_converges_ends_with_three() {
+    // What is said to be known contradicts itself: more leaves to the left than comes, and nothing can flow backwards.
+    let plant = PLANT.replace(
+        "\"weir.mass_loss\" = { value = \"0 t/h\", sigma = \"1 t/h\" }",
+        "\"river.mass_flow\" = \"10 t/h\"\n\"left.mass_flow\" = \"20 t/h\"",
+    );
+    let (status, output, errors) = reconcile(&plant, LOG, BY_ROW_JSON);
+    assert_eq!(status, 3, "{output}{errors}");
+    assert_eq!(errors.lines().count(), 2, "{errors}");
+    assert!(errors.starts_with("2026-03-01T06:00:00Z: not converged: "), "{errors}");
+    let result: Value = serde_json::from_str(&output).unwrap();
+    let balance = &result["balances"][0];
+    assert_eq!(balance["converged"], false);
+    assert!(balance["reason"].as_str().is_some_and(|reason| !reason.is_empty()), "{balance}");
+    assert_eq!((&balance["global_test"], &balance["global_test_after"]), (&Value::Null, &Value::Null));
+    for list in ["tags", "givens", "quantities", "indicators", "findings", "out_of_service"] {
+        assert_eq!(balance[list], serde_json::json!([]), "{list}");
+    }
+}
+
+#[test]
+fn a_reader_that_goes_away_ends_the_program_quietly() {
+    let folder = Folder::new();
+    let rows = (0..3000).map(|row| {
+        format!("2026-03-{:02}T{:02}:{:02}:00Z,100,60,42,8", 1 + row / 1440, row / 60 % 24, row % 60)
+    });
+    let log = folder.write("shift.csv", lines("time,FT-1,FT-2,FT-3,TT-4", rows));
+    let plant = folder.write("plant.toml", PLANT);
+    let mut program = Command::new(env!("CARGO_BIN_EXE_meterwright"))
+        .arg("reconcile")
+        .args([plant, log])
+        .args(BY_ROW_JSON)
+        .stdout(Stdio::piped())
+        .stderr(Stdio::piped())
+        .spawn()
+        .unwrap();
+    let mut some = [0; 100];
+    program.stdout.take().unwrap().read_exact(&mut some).unwrap();
+    let (status, _, errors) = ended(&program.wait_with_output().unwrap());
+    assert_eq!((status, errors.as_str()), (0, ""));
+}

@@ -8,6 +8,7 @@ use super::{Equation, EquationError, Held};
 pub const GRAVITY: f64 = 9.80665;
 
 /// A linear equation: the sum of `coefficient * x` plus a constant is zero. Mass balances, equal pressures, shafts.
+#[derive(Clone, Debug, PartialEq)]
 pub struct Linear {
     /// One coefficient for each local variable.
     pub coefficients: Vec<f64>,
@@ -31,8 +32,8 @@ impl Equation for Linear {
         Ok(sum)
     }
 
-    fn coefficients(&self) -> Option<&[f64]> {
-        Some(&self.coefficients)
+    fn linear(&self) -> Option<Linear> {
+        Some(self.clone())
     }
 }
 

@@ -2,7 +2,7 @@
 
 use meterwright_thermo::Scalar;
 
-use super::{Equation, EquationError, Held};
+use super::{Equation, EquationError, Held, Linear};
 
 /// `x0 = x1 - x2`.
 pub struct Difference;
@@ -12,8 +12,8 @@ impl Equation for Difference {
         Ok(x[0] - (x[1] - x[2]))
     }
 
-    fn coefficients(&self) -> Option<&[f64]> {
-        Some(&[1.0, -1.0, 1.0])
+    fn linear(&self) -> Option<Linear> {
+        Some(Linear::new(vec![1.0, -1.0, 1.0]))
     }
 }
 

@@ -41,8 +41,8 @@ pub trait Equation: Send + Sync {
     /// [`EquationError`] where the equation has no value.
     fn residual<S: Scalar>(&self, x: &[S], held: Held<'_>) -> Result<S, EquationError>;
 
-    /// The coefficients of an equation that is linear, in the order of the local variables.
-    fn coefficients(&self) -> Option<&[f64]> {
+    /// The same equation as a sum, where it is linear: it is then differentiated once and for all.
+    fn linear(&self) -> Option<Linear> {
         None
     }
 }
@@ -59,14 +59,12 @@ impl<E: Equation> Differentiable for E {
     }
 
     fn linearise(&self, x: &[f64], held: Held<'_>, gradient: &mut [f64]) -> Result<f64, EquationError> {
-        if let Some(coefficients) = self.coefficients() {
-            gradient.copy_from_slice(coefficients);
-            return self.residual(x, held);
-        }
         match x.len() {
             0..=4 => whole::<E, 4>(self, x, held, gradient),
             5..=6 => whole::<E, 6>(self, x, held, gradient),
             7..=8 => whole::<E, 8>(self, x, held, gradient),
+            9..=12 => whole::<E, 12>(self, x, held, gradient),
+            13..=16 => whole::<E, 16>(self, x, held, gradient),
             _ => in_strides(self, x, held, gradient),
         }
     }
@@ -123,13 +121,15 @@ pub struct Row {
     name: String,
     role: RowRole,
     variables: Vec<u32>,
+    linear: Option<Linear>,
     equation: Box<dyn Differentiable>,
 }
 
 impl Row {
     /// A row from its equation and the problem's variables that stand for the equation's local ones.
     pub fn new(name: String, role: RowRole, variables: Vec<u32>, equation: impl Equation + 'static) -> Self {
-        Self { name, role, variables, equation: Box::new(equation) }
+        let linear = equation.linear();
+        Self { name, role, variables, linear, equation: Box::new(equation) }
     }
 
     /// What it is called in messages, such as `hp_turbine: energy balance`.
@@ -150,6 +150,11 @@ impl Row {
     /// The problem's variables that stand for the equation's local ones, in their order.
     pub fn variables(&self) -> &[u32] {
         &self.variables
+    }
+
+    /// The row as a sum, where it is linear.
+    pub fn linear(&self) -> Option<&Linear> {
+        self.linear.as_ref()
     }
 
     /// Residual at the local variables `x`.

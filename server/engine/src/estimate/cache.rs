@@ -6,6 +6,7 @@ use std::sync::{Arc, Mutex, PoisonError};
 use crate::equation::Form;
 use crate::kkt::{Analysis, Factor};
 
+use super::evaluation::Evaluation;
 use super::scaling::Scaling;
 
 /// What an analysis depends on: which variables are free, weighted or fixed, and which formulas are held. The anchor
@@ -22,6 +23,10 @@ pub(crate) struct Structure {
     pub(crate) analysis: Arc<Analysis>,
     pub(crate) scaling: Scaling,
     pub(crate) factor: Factor<f64>,
+    /// That point.
+    pub(crate) point: Vec<f64>,
+    /// The rows there.
+    pub(crate) evaluation: Evaluation,
 }
 
 /// The analyses made so far.

@@ -78,7 +78,7 @@ pub(super) fn proximal(
             filter = Filter::default();
             factor = None;
         }
-        scaling.jacobian(problem, &here, &mut values);
+        scaling.jacobian(&here, &mut values);
         let weights: Vec<f64> = weight.iter().zip(scale).map(|(w, s)| w * s * s).collect();
         let system = System { problem, situation, weights: &weights, values: &values, strength, softening };
         let mut ready = system.factor(factor.take())?;

@@ -1,18 +1,16 @@
 //! Residuals and Jacobian of all rows at a point.
 
-use crate::equation::{EquationError, Form, Held, RowRole};
+use crate::equation::{EquationError, Form, Held, Row, RowRole};
 
 use super::problem::Problem;
 
-/// Residuals, derivatives and sizes of all rows at one point; reusable.
+/// Residuals and derivatives of all rows at one point; reusable.
 #[derive(Clone, Debug, Default)]
-pub struct Evaluation {
+pub(crate) struct Evaluation {
     /// Residual of each row.
     pub(crate) residual: Vec<f64>,
     /// Derivatives, in the order of the problem's pattern.
     pub(crate) jacobian: Vec<f64>,
-    /// Size of the largest term of each row, as `max |dc/dx * x|`.
-    pub(crate) size: Vec<f64>,
     /// Definitions that have no value here; their variable can't be known.
     pub(crate) undefined: Vec<u32>,
     local: Vec<f64>,
@@ -29,55 +27,101 @@ pub(crate) struct NoValue {
 impl Evaluation {
     /// Evaluates all rows.
     pub(crate) fn at(&mut self, problem: &Problem, x: &[f64], forms: &[Form]) -> Result<(), NoValue> {
-        let rows = problem.rows.len();
-        self.residual.resize(rows, 0.0);
-        self.size.resize(rows, 0.0);
+        self.residual.clear();
+        self.residual.resize(problem.rows.len(), 0.0);
         self.jacobian.clear();
         self.jacobian.resize(problem.pattern.len(), 0.0);
         self.undefined.clear();
-        let mut places = problem.places.as_slice();
         for (number, row) in problem.rows.iter().enumerate() {
-            let variables = row.variables();
-            self.local.clear();
-            self.local.extend(variables.iter().map(|variable| x[*variable as usize]));
-            self.gradient.clear();
-            self.gradient.resize(variables.len(), 0.0);
-            let (here, rest) = places.split_at(variables.len());
-            places = rest;
-            let value = row.linearise(&self.local, Held(forms), &mut self.gradient);
-            let finite =
-                |value: f64| value.is_finite() && self.gradient.iter().all(|slope| slope.is_finite());
-            match value {
-                Ok(value) if finite(value) => self.residual[number] = value,
-                _ if row.role() == RowRole::Definition => {
-                    self.undefined.push(number as u32);
-                    self.residual[number] = 0.0;
-                    self.gradient.fill(0.0);
-                    self.gradient[0] = 1.0;
-                }
-                Ok(_) => {
-                    return Err(NoValue {
-                        row: number,
-                        error: EquationError::Undefined("it has no finite value"),
-                    });
-                }
-                Err(error) => return Err(NoValue { row: number, error }),
-            }
-            let mut size = 0.0_f64;
-            for ((place, slope), local) in here.iter().zip(&self.gradient).zip(&self.local) {
-                self.jacobian[*place as usize] += slope;
-                size = size.max((slope * local).abs());
-            }
-            self.size[number] = size;
+            self.row(problem, number, row, x, forms)?;
         }
         Ok(())
     }
 
-    /// Largest residual of a row relative to its largest term, over all rows, and that row.
-    pub(crate) fn worst(&self) -> (f64, usize) {
+    /// Evaluates the laws alone, after an evaluation of all rows: linear ones keep their derivatives, and definitions,
+    /// which determine nothing but their own variable, are left where they are.
+    pub(crate) fn laws_at(&mut self, problem: &Problem, x: &[f64], forms: &[Form]) -> Result<(), NoValue> {
+        for (number, row) in problem.rows.iter().enumerate() {
+            if let Some(linear) = row.linear() {
+                let terms = row.variables().iter().zip(&linear.coefficients).map(|(v, c)| x[*v as usize] * c);
+                self.residual[number] = linear.constant + terms.sum::<f64>();
+            } else if row.role() == RowRole::Law {
+                self.jacobian[problem.pattern.range(number)].fill(0.0);
+                self.row(problem, number, row, x, forms)?;
+            } else {
+                self.residual[number] = 0.0;
+            }
+        }
+        Ok(())
+    }
+
+    /// Gives every definition's variable the value that its row says, after an evaluation of the laws. Definitions are
+    /// linear in their variable and stand in an order in which each needs only earlier ones.
+    pub(crate) fn define(&mut self, problem: &Problem, x: &mut [f64], forms: &[Form]) -> Result<(), NoValue> {
+        self.undefined.clear();
+        for (number, row) in
+            problem.rows.iter().enumerate().filter(|(_, row)| row.role() == RowRole::Definition)
+        {
+            for _ in 0..2 {
+                self.jacobian[problem.pattern.range(number)].fill(0.0);
+                self.row(problem, number, row, x, forms)?;
+                let step = self.residual[number] / self.jacobian[problem.places(number)[0] as usize];
+                if step == 0.0 || !step.is_finite() {
+                    break;
+                }
+                x[row.variables()[0] as usize] -= step;
+            }
+        }
+        Ok(())
+    }
+
+    /// Evaluates one row, whose derivatives are zero before.
+    fn row(
+        &mut self,
+        problem: &Problem,
+        number: usize,
+        row: &Row,
+        x: &[f64],
+        forms: &[Form],
+    ) -> Result<(), NoValue> {
+        let variables = row.variables();
+        self.local.clear();
+        self.local.extend(variables.iter().map(|variable| x[*variable as usize]));
+        self.gradient.resize(variables.len().max(self.gradient.len()), 0.0);
+        let gradient = &mut self.gradient[..variables.len()];
+        let value = row.linearise(&self.local, Held(forms), gradient);
+        match value {
+            Ok(value) if value.is_finite() && gradient.iter().all(|slope| slope.is_finite()) => {
+                self.residual[number] = value;
+            }
+            _ if row.role() == RowRole::Definition => {
+                self.undefined.push(number as u32);
+                self.residual[number] = 0.0;
+                gradient.fill(0.0);
+                gradient[0] = 1.0;
+            }
+            Ok(_) => {
+                return Err(NoValue {
+                    row: number,
+                    error: EquationError::Undefined("it has no finite value"),
+                });
+            }
+            Err(error) => return Err(NoValue { row: number, error }),
+        }
+        for (place, slope) in problem.places(number).iter().zip(&*gradient) {
+            self.jacobian[*place as usize] += slope;
+        }
+        Ok(())
+    }
+
+    /// Largest residual of a row relative to its largest term, taken as `max |dc/dx * x|`, over all rows, and that
+    /// row.
+    pub(crate) fn worst(&self, problem: &Problem, x: &[f64]) -> (f64, usize) {
         let mut worst = (0.0, 0);
-        for (row, (residual, size)) in self.residual.iter().zip(&self.size).enumerate() {
-            let relative = if *residual == 0.0 { 0.0 } else { residual.abs() / size.max(f64::MIN_POSITIVE) };
+        for (row, residual) in self.residual.iter().enumerate().filter(|(_, residual)| **residual != 0.0) {
+            let slopes = self.jacobian[problem.pattern.range(row)].iter().zip(problem.pattern.row(row));
+            let size = slopes.map(|(slope, column)| (slope * x[*column as usize]).abs()).fold(0.0, f64::max);
+            let relative = residual.abs() / size.max(f64::MIN_POSITIVE);
             if relative > worst.0 {
                 worst = (relative, row);
             }

@@ -16,7 +16,6 @@ mod solve;
 mod start;
 
 pub use cold::solve_cold;
-pub use evaluation::Evaluation;
 pub use failure::Failure;
 pub use linearisation::{Linearisation, Variances};
 pub use problem::{Observation, Problem, Situation};

@@ -16,8 +16,10 @@ pub struct Problem {
     pub(crate) rows: Vec<Row>,
     pub(crate) streams: Vec<StreamData>,
     pub(crate) pattern: Pattern,
-    /// Where the entries of a row's local variables stand in the pattern's row, which is sorted by column.
-    pub(crate) places: Vec<u32>,
+    /// Where the entries of the rows' local variables stand in the pattern, whose rows are sorted by column.
+    places: Vec<u32>,
+    /// Where each row's places begin.
+    place_start: Vec<u32>,
     pub(crate) cache: Cache,
 }
 
@@ -30,6 +32,7 @@ impl Problem {
         let mut row_start = vec![0_u32];
         let mut columns = Vec::new();
         let mut places = Vec::new();
+        let mut place_start = vec![0_u32];
         for row in &system.rows {
             let base = columns.len();
             let mut sorted = row.variables().to_vec();
@@ -39,6 +42,7 @@ impl Problem {
                 let place = sorted.partition_point(|other| other < variable);
                 places.push((base + place) as u32);
             }
+            place_start.push(places.len() as u32);
             columns.extend_from_slice(&sorted);
             row_start.push(columns.len() as u32);
         }
@@ -49,8 +53,14 @@ impl Problem {
             streams: system.streams,
             pattern,
             places,
+            place_start,
             cache: Cache::default(),
         })
+    }
+
+    /// Where the derivatives by a row's local variables stand in the pattern.
+    pub(crate) fn places(&self, row: usize) -> &[u32] {
+        &self.places[self.place_start[row] as usize..self.place_start[row + 1] as usize]
     }
 
     /// Number of variables.

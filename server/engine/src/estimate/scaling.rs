@@ -36,30 +36,31 @@ pub(crate) struct Scaling {
     pub(crate) column: Vec<f64>,
     /// A row is multiplied by this.
     pub(crate) row: Vec<f64>,
+    /// An entry of the Jacobian is multiplied by this.
+    entry: Vec<f64>,
 }
 
 impl Scaling {
     /// Scales at a point: columns as given, rows to norm one.
     pub(crate) fn at(problem: &Problem, column: Vec<f64>, evaluation: &Evaluation) -> Self {
         let mut row = Vec::with_capacity(problem.rows.len());
+        let mut entry = Vec::with_capacity(problem.pattern.len());
         for number in 0..problem.rows.len() {
             let slopes = &evaluation.jacobian[problem.pattern.range(number)];
-            let scaled =
-                slopes.iter().zip(problem.pattern.row(number)).map(|(s, c)| (s * column[*c as usize]).abs());
-            let norm = scaled.fold(0.0, f64::max);
-            row.push(if norm > 0.0 { 1.0 / norm } else { 1.0 });
+            let scales = problem.pattern.row(number).iter().map(|c| column[*c as usize]);
+            let norm =
+                slopes.iter().zip(scales.clone()).map(|(slope, s)| (slope * s).abs()).fold(0.0, f64::max);
+            let scale = if norm > 0.0 { 1.0 / norm } else { 1.0 };
+            row.push(scale);
+            entry.extend(scales.map(|s| s * scale));
         }
-        Self { column, row }
+        Self { column, row, entry }
     }
 
     /// The scaled Jacobian.
-    pub(crate) fn jacobian(&self, problem: &Problem, evaluation: &Evaluation, out: &mut Vec<f64>) {
+    pub(crate) fn jacobian(&self, evaluation: &Evaluation, out: &mut Vec<f64>) {
         out.clear();
-        for (number, row_scale) in self.row.iter().enumerate() {
-            let slopes = &evaluation.jacobian[problem.pattern.range(number)];
-            let columns = problem.pattern.row(number);
-            out.extend(slopes.iter().zip(columns).map(|(s, c)| s * self.column[*c as usize] * row_scale));
-        }
+        out.extend(evaluation.jacobian.iter().zip(&self.entry).map(|(slope, scale)| slope * scale));
     }
 }
 

@@ -36,15 +36,17 @@ const MOST_STEPS: u32 = 60;
 const MOST_ROUNDS: usize = 25;
 /// Changes of phase that are tried.
 const MOST_PHASE_CHANGES: usize = 5;
-/// A solve has converged when the error left after its last step, extrapolated from the steps' ratio, is this many
-/// sigmas (a thousandth of its scale for what isn't observed).
-const STEP_TOLERANCE: f64 = 1e-8;
+/// A solve has converged when the error left after its last step, extrapolated from the steps' ratio, is this much of
+/// the larger of value and sigma.
+const STEP_TOLERANCE: f64 = 1e-10;
 /// After a step this large, in sigmas, the factor is made anew.
 const STALE_STEP: f64 = 0.5;
 /// So is it when steps shrink no faster than this.
 const STALE_RATE: f64 = 0.05;
 /// Each equation closes to this much of its largest term.
-pub(super) const CLOSURE: f64 = 1e-9;
+const CLOSURE: f64 = 1e-9;
+/// Steps onto the equations go on until they close to this.
+const CLOSED_WELL: f64 = 1e-11;
 
 /// Solves from an anchor.
 ///
@@ -215,7 +217,7 @@ impl<'a> Search<'a> {
         evaluation.at(self.problem, point, &self.forms).map_err(|error| self.no_value(&error))?;
         let scaling = Scaling::at(self.problem, self.anchor.scale.clone(), &evaluation);
         let mut values = Vec::new();
-        scaling.jacobian(self.problem, &evaluation, &mut values);
+        scaling.jacobian(&evaluation, &mut values);
         let columns: Vec<Column> = kinds
             .iter()
             .enumerate()
@@ -238,7 +240,7 @@ impl<'a> Search<'a> {
         factor
             .refactor(&values, &Diagonal::new(&weights))
             .map_err(|error| Failure::Numeric { message: error.to_string() })?;
-        Ok(Arc::new(Structure { analysis, scaling, factor }))
+        Ok(Arc::new(Structure { analysis, scaling, factor, point: point.clone(), evaluation }))
     }
 
     fn no_value(&self, error: &NoValue) -> Failure {
@@ -261,8 +263,8 @@ impl<'a> Search<'a> {
         let mut previous = f64::NAN;
         self.multipliers.clear();
         self.multipliers.resize(self.problem.rows.len(), 0.0);
-        self.here.at(self.problem, &self.x, &self.forms).map_err(|_| Trouble::Stuck)?;
-        scaling.jacobian(self.problem, &self.here, &mut self.values);
+        self.start(structure)?;
+        scaling.jacobian(&self.here, &mut self.values);
         for _ in 0..MOST_STEPS {
             self.iterations += 1;
             if renew {
@@ -281,7 +283,7 @@ impl<'a> Search<'a> {
             if !step.columns.iter().all(|value| value.is_finite()) {
                 return Err(Trouble::Structure);
             }
-            let size = self.step_size(scaling, &step.columns);
+            let (size, relative) = self.step_size(scaling, &step.columns);
             if let Some((variable, side)) = blocked(&self.problem.variables, &self.x, &step, scaling) {
                 return Err(Trouble::Blocked(variable, side));
             }
@@ -292,9 +294,9 @@ impl<'a> Search<'a> {
                 renew = true;
                 continue;
             }
-            scaling.jacobian(self.problem, &self.here, &mut self.values);
+            scaling.jacobian(&self.here, &mut self.values);
             let rate = if previous.is_finite() { (size / previous).min(1.0) } else { 1.0 };
-            if damping.is_zero() && size * rate < STEP_TOLERANCE {
+            if damping.is_zero() && relative * rate < STEP_TOLERANCE {
                 return self.close(scaling, &mut factor);
             }
             renew = size > STALE_STEP || rate > STALE_RATE && previous.is_finite() || damping.lower();
@@ -302,6 +304,15 @@ impl<'a> Search<'a> {
             previous = size;
         }
         Err(Trouble::Stuck)
+    }
+
+    /// The evaluation at the start: the structure's own where it was made at the same point.
+    fn start(&mut self, structure: &Structure) -> Result<(), Trouble> {
+        if structure.point == self.x {
+            self.here.clone_from(&structure.evaluation);
+            return Ok(());
+        }
+        self.here.at(self.problem, &self.x, &self.forms).map_err(|_| Trouble::Stuck)
     }
 
     /// What pulls at each variable, scaled: the readings against the multipliers of the equations. It vanishes for
@@ -320,17 +331,18 @@ impl<'a> Search<'a> {
         pull
     }
 
-    /// Largest component of a step, in sigmas where observed and in thousandths of the scale elsewhere.
-    fn step_size(&self, scaling: &Scaling, step: &[f64]) -> f64 {
-        let component = |(j, value): (usize, &f64)| {
-            let moved = value.abs() * scaling.column[j];
-            if self.weight[j] > 0.0 {
-                moved * self.weight[j].sqrt()
-            } else {
-                1e3 * moved / scaling.column[j].max(self.x[j].abs())
-            }
-        };
-        step.iter().enumerate().map(component).fold(0.0, f64::max)
+    /// Largest component of a step, in sigmas where observed and in thousandths of the scale elsewhere; and relative to
+    /// the larger of value and that unit.
+    fn step_size(&self, scaling: &Scaling, step: &[f64]) -> (f64, f64) {
+        let (mut size, mut relative) = (0.0_f64, 0.0_f64);
+        for (j, change) in step.iter().enumerate() {
+            let moved = change.abs() * scaling.column[j];
+            let unit =
+                if self.weight[j] > 0.0 { self.weight[j].sqrt().recip() } else { 1e-3 * scaling.column[j] };
+            size = size.max(moved / unit);
+            relative = relative.max(moved / unit.max(self.x[j].abs()));
+        }
+        (size, relative)
     }
 
     /// Moves along a step as far as the filter lets it.
@@ -342,7 +354,7 @@ impl<'a> Search<'a> {
             for (j, value) in self.x.iter_mut().enumerate() {
                 *value = from[j] + share * step.columns[j] * scaling.column[j];
             }
-            if self.here.at(self.problem, &self.x, &self.forms).is_ok() {
+            if self.here.laws_at(self.problem, &self.x, &self.forms).is_ok() {
                 let then = (self.infeasibility(scaling), self.situation.objective(&self.x));
                 if size < 1e-2 || filter.accepts(then, now) {
                     filter.add(now);
@@ -356,7 +368,7 @@ impl<'a> Search<'a> {
         }
         self.x = from;
         // This point was accepted before, so that it has a value; the evaluation must be its own again.
-        let _ = self.here.at(self.problem, &self.x, &self.forms);
+        let _ = self.here.laws_at(self.problem, &self.x, &self.forms);
         false
     }
 
@@ -364,12 +376,12 @@ impl<'a> Search<'a> {
         self.here.residual.iter().zip(&scaling.row).map(|(c, s)| (c * s).abs()).sum()
     }
 
-    /// Steps onto the equations alone.
+    /// Steps onto the equations alone, then gives definitions their values.
     fn close(&mut self, scaling: &Scaling, factor: &mut Factor<f64>) -> Result<(), Trouble> {
         let mut right = Vectors::zeros(factor.analysis());
         let mut step = Vectors::zeros(factor.analysis());
         for _ in 0..3 {
-            if self.here.worst().0 < CLOSURE * 1e-4 {
+            if self.here.worst(self.problem, &self.x).0 < CLOSED_WELL {
                 break;
             }
             for (slot, (residual, scale)) in
@@ -381,16 +393,17 @@ impl<'a> Search<'a> {
             for (value, (change, scale)) in self.x.iter_mut().zip(step.columns.iter().zip(&scaling.column)) {
                 *value += change * scale;
             }
-            self.here.at(self.problem, &self.x, &self.forms).map_err(|_| Trouble::Stuck)?;
+            self.here.laws_at(self.problem, &self.x, &self.forms).map_err(|_| Trouble::Stuck)?;
         }
-        scaling.jacobian(self.problem, &self.here, &mut self.values);
+        self.here.define(self.problem, &mut self.x, &self.forms).map_err(|_| Trouble::Stuck)?;
+        scaling.jacobian(&self.here, &mut self.values);
         Ok(())
     }
 
     /// Whether what the structure took for dependent is so at the solution: dropped rows close, and directions that
     /// nothing determines still change no equation.
     fn structure_holds(&self, structure: &Structure) -> bool {
-        let closes = self.here.worst().0 < CLOSURE;
+        let closes = self.here.worst(self.problem, &self.x).0 < CLOSURE;
         closes
             && structure.analysis.null_vectors().iter().all(|vector| self.is_null(structure, vector.column))
     }
@@ -427,7 +440,7 @@ impl<'a> Search<'a> {
             let columns: Vec<u8> = (0..self.x.len()).map(|j| self.column_kind(j)).collect();
             self.active = held;
             let free = self.analyse(&columns, None)?;
-            free.scaling.jacobian(self.problem, &self.here, &mut self.values);
+            free.scaling.jacobian(&self.here, &mut self.values);
             free
         };
         let undefined = self.here.undefined.iter().map(|row| self.problem.rows[*row as usize].variables()[0]);

@@ -19,6 +19,8 @@ mod rank;
 mod scaling;
 mod solve;
 mod tape;
+#[cfg(test)]
+mod tests;
 
 pub use analysis::{Analysis, AnalysisError};
 pub use factor::{Diagonal, Factor, FactorError, PivotPlace};

@@ -1,11 +1,11 @@
 //! Meterwright's service: everything that touches the world. The balance itself lives in `meterwright-engine`.
 //!
 //! Floors, from the ground: [`log`] reads files of samples; [`period`] makes of them one reading a tag and period;
-//! `report` puts balances into words; [`command`] is the command line.
+//! [`report`] puts balances into words; [`command`] is the command line.
 
 mod average;
 pub mod command;
 pub mod log;
 mod parallel;
 pub mod period;
-mod report;
+pub mod report;

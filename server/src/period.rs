@@ -106,13 +106,6 @@ fn of_row(tags: &[ExpectedTag], row: &Row) -> Period {
     }
 }
 
-/// The samples of one tag in order of time.
-#[derive(Clone, Debug, Default)]
-struct Series {
-    times: Vec<Timestamp>,
-    samples: Vec<Sample>,
-}
-
 /// The window as one period; none if no row lies in it.
 ///
 /// A sample holds until the tag's next one, good or bad, or for its `hold` if that is shorter; the last holds to the end of
@@ -120,21 +113,24 @@ struct Series {
 /// window is the sample's weight, so that a value stored before the window and not changed since counts in it.
 fn whole(log: &Log, window: Window) -> Result<Option<Period>, LogFaults> {
     let tags = &log.expectation().tags;
-    let mut rows: Vec<Row> = log.rows()?.collect::<Result<_, _>>()?;
-    rows.sort_by_key(|row| row.time);
-    let times: Vec<Timestamp> = rows.iter().map(|row| row.time).collect();
-    let inside = || times.iter().copied().filter(|time| window.contains(*time));
-    let (Some(from), Some(to)) = (inside().next(), inside().next_back()) else { return Ok(None) };
-    let end = end_of(&times).unwrap_or(to);
-    let mut series = vec![Series::default(); tags.len()];
-    for row in rows {
+    let mut times = Vec::new();
+    let mut series: Vec<Vec<(Timestamp, Sample)>> = vec![Vec::new(); tags.len()];
+    for row in log.rows()? {
+        let row = row?;
+        times.push(row.time);
         for (series, sample) in series.iter_mut().zip(row.samples) {
             if sample != Sample::Absent {
-                series.times.push(row.time);
-                series.samples.push(sample);
+                series.push((row.time, sample));
             }
         }
     }
+    times.sort_unstable();
+    for series in &mut series {
+        series.sort_by_key(|(time, _)| *time);
+    }
+    let inside = || times.iter().copied().filter(|time| window.contains(*time));
+    let (Some(from), Some(to)) = (inside().next(), inside().next_back()) else { return Ok(None) };
+    let end = end_of(&times).unwrap_or(to);
     let mut period = Period { from, to, readings: Vec::new(), warnings: Vec::new() };
     for (tag, series) in tags.iter().zip(&series) {
         let (good, seen) = weigh(tag, series, window, end);
@@ -152,12 +148,17 @@ fn end_of(times: &[Timestamp]) -> Option<Timestamp> {
     times.last()?.checked_add(median.unwrap_or_default()).ok()
 }
 
-/// The good samples that hold in the window, and how many hold there in all.
-fn weigh(tag: &ExpectedTag, series: &Series, window: Window, end: Timestamp) -> (Vec<WeightedSample>, usize) {
+/// The good samples of a tag, in order of time, that hold in the window; and how many of any kind hold there.
+fn weigh(
+    tag: &ExpectedTag,
+    series: &[(Timestamp, Sample)],
+    window: Window,
+    end: Timestamp,
+) -> (Vec<WeightedSample>, usize) {
     let mut good = Vec::new();
     let mut seen = 0;
-    for (place, (&time, &sample)) in series.times.iter().zip(&series.samples).enumerate() {
-        let next = series.times.get(place + 1).copied().unwrap_or(end);
+    let nexts = series.iter().skip(1).map(|(time, _)| *time).chain([end]);
+    for (&(time, sample), next) in series.iter().zip(nexts) {
         let begins = window.from.map_or(time, |from| from.max(time));
         let ends = window.to.map_or(next, |to| to.min(next));
         let held = tag.hold.map_or(f64::INFINITY, |hold| hold - seconds(time, begins));

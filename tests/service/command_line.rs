@@ -266,6 +266,15 @@ fn a_wrong_input_is_told_fault_by_fault_and_nothing_is_written() {
 }
 
 #[test]
+fn faults_of_the_plant_file_and_of_the_log_are_told_together() {
+    let plant = PLANT.replace("kind = \"header\"", "kind = \"heder\"");
+    let (status, _, errors) = reconcile(&plant, &LOG.replace("60,42", "sixty,42"), BY_ROW);
+    assert_eq!(status, 1);
+    assert!(errors.lines().next().is_some_and(|line| line.starts_with("plant.toml:20:9: ")), "{errors}");
+    assert!(errors.ends_with("shift.csv:2:3: FT-2: `sixty` is not a number\n"), "{errors}");
+}
+
+#[test]
 fn files_that_are_not_there_are_faults_too() {
     let output = Command::new(env!("CARGO_BIN_EXE_meterwright"))
         .args(["reconcile", "no-plant.toml", "no-log.csv"])

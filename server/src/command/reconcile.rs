@@ -26,7 +26,7 @@ pub(super) struct Arguments {
     /// Write one JSON object instead of a report
     #[arg(long)]
     json: bool,
-    /// What makes a period: a steady stretch, each row (averaged already), or the whole log averaged into one
+    /// What makes a period: a steady stretch, each row, or the whole log averaged
     #[arg(long, value_enum, default_value_t = PeriodChoice::Steady)]
     periods: PeriodChoice,
     /// Balance with every tag as it stands and look for no errors
@@ -92,12 +92,24 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     let text = read(&arguments.plant)?;
     let at = |faults: Vec<Fault>| plant_faults(&arguments.plant, &text, &faults);
     let plant = plant::parse(&text).map_err(|faults| Stop::Input(at(faults)))?;
-    let (compiled, expectation) = understand(&plant).map_err(|faults| Stop::Input(at(faults)))?;
+    let compiled = CompiledPlant::compile(&plant);
+    let expectation = match Expectation::of(&plant) {
+        Ok(expectation) => expectation,
+        Err(fault) => {
+            return Err(Stop::Input(at(compiled.err().into_iter().flatten().chain([fault]).collect())));
+        }
+    };
     let zone = expectation.zone.clone();
     let window =
         Window { from: time(arguments.from.as_deref(), &zone)?, to: time(arguments.to.as_deref(), &zone)? };
-    let in_log = |faults| Stop::Input(log_faults(&arguments.log, &faults));
-    let log = Log::open(&arguments.log, expectation).map_err(in_log)?;
+    let in_log = |faults| log_faults(&arguments.log, &faults);
+    let (compiled, log) = match (compiled.map_err(at), Log::open(&arguments.log, expectation).map_err(in_log))
+    {
+        (Ok(compiled), Ok(log)) => (compiled, log),
+        (compiled, log) => {
+            return Err(Stop::Input([compiled.err(), log.err()].into_iter().flatten().flatten().collect()));
+        }
+    };
     let counters = counters(&plant, &log);
     if !counters.is_empty() {
         return Err(Stop::Input(at(counters)));
@@ -111,7 +123,7 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     } else {
         Box::new(TextReport { plant: plant_name, revision, zone: &zone, labels })
     };
-    let periods = periods(rule, &log, window).map_err(in_log)?;
+    let periods = periods(rule, &log, window).map_err(|faults| Stop::Input(in_log(faults)))?;
     let run = Run { compiled: &compiled, report: &*report, log: &arguments.log };
     run.balance_all(periods, notes)
 }
@@ -133,16 +145,6 @@ fn read(path: &Path) -> Result<String, Stop> {
     let fault =
         |reason: &dyn Display| Stop::Input(vec![format!("{}:1:1: can't be read: {reason}", path.display())]);
     fs::read_to_string(path).map_err(|error| fault(&error))
-}
-
-/// Compiles the plant and makes out what its logs look like; all faults of both.
-fn understand(plant: &Plant) -> Result<(CompiledPlant, Expectation), Vec<Fault>> {
-    match (CompiledPlant::compile(plant), Expectation::of(plant)) {
-        (Ok(compiled), Ok(expectation)) => Ok((compiled, expectation)),
-        (compiled, expectation) => {
-            Err(compiled.err().into_iter().flatten().chain(expectation.err()).collect())
-        }
-    }
 }
 
 /// The instant that an argument names.

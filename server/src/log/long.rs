@@ -1,5 +1,5 @@
 //! Long logs: a row a sample, with its time, tag and value. A historian may write tag after tag, so all samples are
-//! held, sixteen to forty bytes each, and put in order of time.
+//! held, some fifty bytes each, and put in order of time.
 
 use std::collections::{BTreeMap, HashMap};
 

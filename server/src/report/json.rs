@@ -16,13 +16,13 @@ use super::{Labels, Report};
 use crate::period::Period;
 
 /// Writes the one JSON object.
-pub(crate) struct JsonReport<'p> {
+pub struct JsonReport<'p> {
     /// Name of the plant.
-    pub(crate) plant: &'p str,
+    pub plant: &'p str,
     /// Hash of the plant file.
-    pub(crate) revision: &'p str,
+    pub revision: &'p str,
     /// What the numbers are named and measured in.
-    pub(crate) labels: Labels<'p>,
+    pub labels: Labels<'p>,
 }
 
 impl Report for JsonReport<'_> {

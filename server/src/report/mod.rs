@@ -9,11 +9,11 @@ use meterwright_engine::{Balance, CompiledPlant, Label};
 
 use crate::period::Period;
 
-pub(crate) use json::JsonReport;
-pub(crate) use text::TextReport;
+pub use json::JsonReport;
+pub use text::TextReport;
 
 /// A report is written in pieces: what stands before all balances, each balance as it is finished, what stands after.
-pub(crate) trait Report: Sync {
+pub trait Report: Sync {
     /// What stands before the balances.
     fn head(&self) -> Vec<u8>;
     /// One balance. Balances may be put into words on several threads at once.
@@ -26,11 +26,15 @@ pub(crate) trait Report: Sync {
 
 /// Names and units of a plant's tags, soft givens, quantities and indicators, in the order of its balances.
 #[derive(Clone, Copy)]
-pub(crate) struct Labels<'p> {
-    pub(crate) tags: &'p [Label],
-    pub(crate) givens: &'p [Label],
-    pub(crate) quantities: &'p [Label],
-    pub(crate) indicators: &'p [Label],
+pub struct Labels<'p> {
+    /// The tags.
+    pub tags: &'p [Label],
+    /// The soft givens.
+    pub givens: &'p [Label],
+    /// The quantities.
+    pub quantities: &'p [Label],
+    /// The indicators.
+    pub indicators: &'p [Label],
 }
 
 impl<'p> From<&'p CompiledPlant> for Labels<'p> {

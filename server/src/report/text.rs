@@ -14,15 +14,15 @@ use super::{Labels, Report};
 use crate::period::Period;
 
 /// Writes the report that people read.
-pub(crate) struct TextReport<'p> {
+pub struct TextReport<'p> {
     /// Name of the plant.
-    pub(crate) plant: &'p str,
+    pub plant: &'p str,
     /// Hash of the plant file.
-    pub(crate) revision: &'p str,
+    pub revision: &'p str,
     /// Zone in which times are written.
     pub(crate) zone: &'p TimeZone,
     /// What the numbers are named and measured in.
-    pub(crate) labels: Labels<'p>,
+    pub labels: Labels<'p>,
 }
 
 const CAUTIONS: &[u8] = b"

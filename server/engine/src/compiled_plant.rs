@@ -152,6 +152,9 @@ impl CompiledPlant {
                     situation.exact[*size as usize] = Some(size_si);
                 }
             }
+            if let (Ok(observed), Some(constant)) = (read, instrument.constant) {
+                situation.exact[constant as usize] = Some(observed.value);
+            }
             tags.push((read, samples));
         }
         for given in &self.soft_givens {
@@ -202,7 +205,8 @@ impl CompiledPlant {
         })
     }
 
-    /// The largest flow and power that anything reads, beyond which an uncertainty says nothing.
+    /// The largest flow and power that anything reads, beyond which an uncertainty says nothing; the largest flow may
+    /// carry a megajoule a kilogram where the only power read is that of a small motor.
     fn largest(&self, observations: &Observations) -> Largest {
         let mut largest = Largest { mass_flow: 0.0, power: 0.0 };
         for observation in &observations.situation.observations {
@@ -213,6 +217,7 @@ impl CompiledPlant {
                 _ => {}
             }
         }
+        largest.power = largest.power.max(largest.mass_flow * 1e6);
         largest
     }
 
@@ -250,7 +255,8 @@ impl CompiledPlant {
                     let (residual, judged) = (&residuals[*place], &judged[*place]);
                     told.tag(reads, *observed, *samples, shared, residual, judged)
                 }
-                _ => told.excluded(reads, read.ok(), *samples),
+                (None, Ok(observed)) => kept(*observed, *samples),
+                _ => told.excluded(reads, *samples),
             }
         };
         self.instruments.iter().zip(&observations.tags).zip(places).map(one).collect()
@@ -416,20 +422,33 @@ impl Told<'_> {
     }
 
     /// A tag that takes no part; what it would have read is told where it is known.
-    fn excluded(&self, reads: Option<(u32, f64)>, observed: Option<Observed>, samples: u32) -> TagBalance {
+    fn excluded(&self, reads: Option<(u32, f64)>, samples: u32) -> TagBalance {
         let known = reads.filter(|(base, _)| !self.solution.linearisation.touched()[*base as usize]);
         TagBalance {
-            measured: observed.map(|observed| observed.value),
-            sigma: observed.map(|observed| observed.sigma),
             samples,
             reconciled: known.map(|(base, shift)| self.solution.x[base as usize] - shift),
             reconciled_sigma: known.map(|(base, _)| self.variances[base as usize].sqrt()),
-            correction: None,
-            redundancy: None,
-            statistic: None,
-            minimum_detectable_bias: None,
-            class: TagClass::Nonredundant,
-            verdict: Verdict::Excluded,
+            ..NOTHING
         }
     }
 }
+
+/// A tag that enters no balance and states no uncertainty: its reading is kept, and nothing is said of it.
+fn kept(observed: Observed, samples: u32) -> TagBalance {
+    TagBalance { measured: Some(observed.value), samples, verdict: Verdict::Unchecked, ..NOTHING }
+}
+
+/// A tag of which nothing is known.
+const NOTHING: TagBalance = TagBalance {
+    measured: None,
+    sigma: None,
+    samples: 0,
+    reconciled: None,
+    reconciled_sigma: None,
+    correction: None,
+    redundancy: None,
+    statistic: None,
+    minimum_detectable_bias: None,
+    class: TagClass::Nonredundant,
+    verdict: Verdict::Excluded,
+};

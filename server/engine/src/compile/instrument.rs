@@ -17,6 +17,8 @@ pub(crate) struct Instrument {
     pub(crate) base: Option<u32>,
     /// The variable it observes, shared errors counted in; none where nothing states its uncertainty.
     pub(crate) variable: Option<u32>,
+    /// The variable that a reading without uncertainty fixes: a tag that enters no balance, named in a formula.
+    pub(crate) constant: Option<u32>,
     /// Variable minus reading, SI: the surroundings' pressure for a gauge tag where that is exact.
     pub(crate) shift: f64,
     /// Shared errors it takes part in: the variable that holds the error's size for this reading, and that size.
@@ -76,7 +78,8 @@ impl Instrument {
             }
         };
         let sigma = stated.hypot(error_of_mean);
-        if sigma > 0.0 && sigma.is_finite() && value.is_finite() {
+        let uncertain = sigma > 0.0 && sigma.is_finite() || self.variable.is_none();
+        if uncertain && value.is_finite() {
             Ok(Observed { value, sigma, repeat })
         } else {
             Err(Exclusion::NoUncertainty)

@@ -148,12 +148,14 @@ impl Known {
         };
         let surroundings = (plant.surroundings.pressure, plant.surroundings.temperature);
         let base = variable.filter(|_| quantity.is_some());
+        let constant = if variable.is_none() { naming.system().find(&tag.name.value) } else { None };
         let (shares, tag) = (Vec::new(), tag.clone());
         self.instruments.push(Instrument {
             label,
             reads: quantity,
             base,
             variable,
+            constant,
             shift,
             shares,
             surroundings,

@@ -40,7 +40,7 @@ const MOST_PHASE_CHANGES: usize = 5;
 /// the larger of value and sigma.
 const STEP_TOLERANCE: f64 = 1e-10;
 /// After a step this large, in sigmas, the factor is made anew.
-const STALE_STEP: f64 = 0.5;
+const STALE_STEP: f64 = 3.0;
 /// So is it when steps shrink no faster than this.
 const STALE_RATE: f64 = 0.05;
 /// Each equation closes to this much of its largest term.

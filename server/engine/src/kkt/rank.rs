@@ -29,6 +29,9 @@ const CANCELLED: f64 = 1e-15;
 /// Parts of a scaled null vector below this size are rounding.
 const NULL_PART: f64 = 1e-9;
 
+/// A column that a null vector moves by this much against its held one is held instead.
+const FAR_MORE: f64 = 3.0;
+
 /// How many columns or rows with a permissible pivot are looked at before the sparsest pivot among them is taken.
 const CANDIDATES: usize = 4;
 
@@ -89,9 +92,50 @@ impl Rank {
             basis[column as usize] = true;
             pivots.push(elimination.eliminate(row, column));
         }
-        let null_vectors = elimination.null_vectors(&pivots, &basis);
+        let mut null_vectors = elimination.null_vectors(&pivots, &basis);
+        hold_what_moves_most(&mut null_vectors, &mut basis);
         let dropped_rows = elimination.complete(&mut basis);
         Self { basis, null_vectors, dropped_rows }
+    }
+}
+
+/// Exchanges the held column of each null vector for the one that it moves most, if that moves far more: held there,
+/// the others need only move a little to satisfy the equations. (Held at a guess, the temperature of a liquid would send
+/// an unread pressure to absurd values; held at a guess, the pressure moves the temperature by next to nothing.)
+fn hold_what_moves_most(vectors: &mut [NullVector], basis: &mut [bool]) {
+    for place in 0..vectors.len() {
+        let Some((column, largest)) =
+            vectors[place].parts.iter().copied().max_by(|a, b| a.1.abs().total_cmp(&b.1.abs()))
+        else {
+            continue;
+        };
+        if largest.abs() < FAR_MORE {
+            continue;
+        }
+        basis[vectors[place].column as usize] = true;
+        basis[column as usize] = false;
+        vectors[place].column = column;
+        vectors[place].parts.iter_mut().for_each(|(_, part)| *part /= largest);
+        let chosen = vectors[place].parts.clone();
+        for (_, other) in vectors.iter_mut().enumerate().filter(|(other, _)| *other != place) {
+            if let Ok(at) = other.parts.binary_search_by_key(&column, |(column, _)| *column) {
+                let share = other.parts[at].1;
+                other.subtract(&chosen, share);
+            }
+        }
+    }
+}
+
+impl NullVector {
+    /// Subtracts a multiple of other parts.
+    fn subtract(&mut self, parts: &[(u32, f64)], share: f64) {
+        for (column, part) in parts {
+            match self.parts.binary_search_by_key(column, |(column, _)| *column) {
+                Ok(at) => self.parts[at].1 -= share * part,
+                Err(at) => self.parts.insert(at, (*column, -share * part)),
+            }
+        }
+        self.parts.retain(|(_, part)| part.abs() > NULL_PART);
     }
 }
 

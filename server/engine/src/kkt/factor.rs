@@ -83,6 +83,8 @@ pub struct Factor<S> {
     pub(super) coefficients: Vec<f64>,
     pub(super) work: Vec<S>,
     pub(super) correction: Vec<S>,
+    /// Per equation of the system, the sum of its terms' magnitudes and of its coefficients' for a residual.
+    pub(super) bound: Vec<[f64; 2]>,
 }
 
 impl<S: Scalar> Factor<S> {
@@ -97,6 +99,7 @@ impl<S: Scalar> Factor<S> {
             coefficients: vec![0.0; analysis.entries.len()],
             work: vec![zero; count],
             correction: vec![zero; count],
+            bound: vec![[0.0; 2]; count],
             analysis,
         }
     }
@@ -171,14 +174,21 @@ impl<S: Scalar> Factor<S> {
         for step in &analysis.tape.steps {
             let (block, tail) = storage.split_at_mut(step.stored());
             let (destinations, rest) = tape.split_at(step.updates());
+            let own = &self.diagonal[step.position as usize..];
             let usable = match step.kind {
                 Kind::Variable => {
-                    let own = self.diagonal[step.position as usize].value();
-                    // Not below half of its own weight: it could only be so by rounding, and then it is worthless.
-                    block[0].value() > 0.5 * own && eliminate_single(block, tail, destinations)
+                    raise(&mut block[0], own[0]);
+                    block[0].value() > 0.0 && eliminate_single(block, tail, destinations)
                 }
-                Kind::Equation => block[0].value() < 0.0 && eliminate_single(block, tail, destinations),
-                Kind::Pair(floor) => eliminate_pair(block, tail, destinations, floor),
+                Kind::Equation => {
+                    lower(&mut block[0], own[0]);
+                    block[0].value() < 0.0 && eliminate_single(block, tail, destinations)
+                }
+                Kind::Pair(floor) => {
+                    raise(&mut block[0], own[0]);
+                    lower(&mut block[2], own[1]);
+                    eliminate_pair(block, tail, destinations, floor)
+                }
             };
             if !usable {
                 return Err(FactorError::Pivot { pivot: analysis.place(step.position, step.width()) });
@@ -202,6 +212,21 @@ impl Analysis {
 
 pub(super) fn check_length(what: &'static str, found: usize, expected: usize) -> Result<(), FactorError> {
     if found == expected { Ok(()) } else { Err(FactorError::Length { what, found, expected }) }
+}
+
+/// The diagonal of a variable is its own weight plus something that isn't negative, whatever was eliminated before: a
+/// smaller one is rounding.
+fn raise<S: Scalar>(diagonal: &mut S, own: S) {
+    if diagonal.value() < own.value() {
+        *diagonal = own;
+    }
+}
+
+/// The same for an equation, whose diagonal is its own softening and what isn't positive.
+fn lower<S: Scalar>(diagonal: &mut S, own: S) {
+    if diagonal.value() > own.value() {
+        *diagonal = own;
+    }
 }
 
 /// Eliminates one node: turns its block into the inverse pivot and the multipliers, and subtracts the outer product

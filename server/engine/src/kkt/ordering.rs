@@ -25,6 +25,11 @@ const THRESHOLD: f64 = 0.1;
 /// A later factorisation may see a pair shrink by this against the best pair of its variable in the trial.
 const COLLAPSE: f64 = 1e-10;
 
+/// What it costs, in halves of a front's node, that a pivot makes two equations share the uncertainty of a reading.
+/// Combining them later must then take differences of what has already been squared, which costs digits; three keeps
+/// two digits more than zero and makes the factor a sixth longer.
+const COUPLING: u32 = 3;
+
 /// How a node may be eliminated.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
 pub(super) enum Role {
@@ -59,12 +64,22 @@ pub(super) struct Graph {
     /// Off-diagonal entries of each row, ascending by node.
     adjacency: Vec<Vec<Entry>>,
     diagonal: Vec<f64>,
+    /// The diagonal as it was: in exact arithmetic that of a variable never falls below it, nor rises that of an
+    /// equation above it, so what does is rounding.
+    own: Vec<f64>,
     role: Vec<Role>,
     alive: Vec<bool>,
     /// Raised whenever a node is put into the queue anew: older places there are void.
     stamp: Vec<u32>,
     queue: BinaryHeap<Reverse<(u32, u32, u32)>>,
     merged: Vec<Entry>,
+}
+
+/// What a pivot does to one node of its front: its entries, and the same times the inverse of the pivot block.
+struct Touched {
+    node: u32,
+    left: [f64; 2],
+    right: [f64; 2],
 }
 
 /// A node's best pivot.
@@ -81,6 +96,7 @@ impl Graph {
         let count = diagonal.len();
         Self {
             adjacency,
+            own: diagonal.clone(),
             diagonal,
             role,
             alive: vec![true; count],
@@ -124,24 +140,29 @@ impl Graph {
         }
     }
 
-    /// The best pivot that a node leads; its cost is twice the size of its front, one less for a pair, because a pair
-    /// takes two nodes out with one front.
+    /// The best pivot that a node leads. Its cost is twice the size of its front, one less for a pair, because a pair
+    /// takes two nodes out with one front; and [`COUPLING`] for every equation that comes to share an uncertainty.
     fn choice(&self, node: u32) -> Choice {
         let own = &self.adjacency[node as usize];
-        let alone = Choice { cost: 2 * own.len() as u32, partner: None, floor: 0.0 };
+        let partners = own.iter().filter(|entry| self.role[entry.node as usize] == Role::Partner);
+        let rows = partners.clone().count() as u32;
+        let cost = 2 * own.len() as u32 + COUPLING * rows.saturating_sub(1);
+        let alone = Choice { cost, partner: None, floor: 0.0 };
         if self.role[node as usize] != Role::Lead {
             return alone;
         }
-        let partners = own.iter().filter(|entry| self.role[entry.node as usize] == Role::Partner);
         let sized = partners.map(|entry| (entry.node, self.strength(node, entry)));
         let strongest = sized.clone().fold(0.0_f64, |most, (_, strength)| most.max(strength));
         let permitted = sized.filter(|(row, strength)| {
             let enough = |largest: f64| largest > 0.0 && *strength >= THRESHOLD * largest;
             enough(strongest) || enough(self.largest_in_row(*row))
         });
-        let priced = permitted.map(|(row, _)| (self.front_of_pair(node, row), row)).min();
-        priced.map_or(alone, |(front, row)| Choice {
-            cost: (2 * front).saturating_sub(1),
+        let cost = |row: u32| {
+            let coupled = if self.diagonal[row as usize] == 0.0 { 0 } else { rows.saturating_sub(2) };
+            (2 * self.front_of_pair(node, row) + COUPLING * coupled).saturating_sub(1)
+        };
+        permitted.map(|(row, _)| (cost(row), row)).min().map_or(alone, |(cost, row)| Choice {
+            cost,
             partner: Some(row),
             floor: (COLLAPSE * strongest).powi(2),
         })
@@ -156,8 +177,16 @@ impl Graph {
 
     /// The root of the determinant's magnitude.
     fn strength(&self, node: u32, entry: &Entry) -> f64 {
-        let diagonal = -self.diagonal[node as usize] * self.diagonal[entry.node as usize];
-        (entry.value * entry.value + diagonal.max(0.0)).sqrt()
+        let (h, e) = (self.bounded_variable(node), self.bounded_equation(entry.node));
+        (entry.value * entry.value - h * e).sqrt()
+    }
+
+    fn bounded_variable(&self, node: u32) -> f64 {
+        self.diagonal[node as usize].max(self.own[node as usize])
+    }
+
+    fn bounded_equation(&self, node: u32) -> f64 {
+        self.diagonal[node as usize].min(self.own[node as usize])
     }
 
     /// How many nodes besides the two are adjacent to either.
@@ -173,76 +202,68 @@ impl Graph {
     }
 
     fn eliminate(&mut self, node: u32, choice: Choice) -> Pivot {
-        let first = std::mem::take(&mut self.adjacency[node as usize]);
-        self.alive[node as usize] = false;
-        let mut front = Vec::with_capacity(choice.cost as usize / 2 + 1);
-        let mut left = Vec::with_capacity(front.capacity());
-        let mut right = Vec::with_capacity(front.capacity());
-        if let Some(partner) = choice.partner {
-            let second = std::mem::take(&mut self.adjacency[partner as usize]);
-            self.alive[partner as usize] = false;
-            let coupling = first.iter().find(|entry| entry.node == partner).map_or(0.0, |entry| entry.value);
-            let (h, e) = (self.diagonal[node as usize], self.diagonal[partner as usize]);
-            let determinant = h * e - coupling * coupling;
-            for (node, a, b) in union(&first, &second, (node, partner)) {
-                front.push(node);
-                left.push([a, b]);
-                right.push([(e * a - coupling * b) / determinant, (h * b - coupling * a) / determinant]);
-            }
-        } else {
-            let pivot = self.diagonal[node as usize];
-            for entry in &first {
-                front.push(entry.node);
-                left.push([entry.value, 0.0]);
-                right.push([if pivot == 0.0 { 0.0 } else { entry.value / pivot }, 0.0]);
-            }
+        let touched = match choice.partner {
+            Some(partner) => self.take_pair(node, partner),
+            None => self.take_single(node),
+        };
+        for target in &touched {
+            self.update(target, &touched, (node, choice.partner));
         }
-        for at in 0..front.len() {
-            self.update(at, right[at], &front, &left, (node, choice.partner));
-        }
+        let front: Vec<u32> = touched.iter().map(|touched| touched.node).collect();
         self.requeue(&front, choice.partner.is_none());
         Pivot { first: node, second: choice.partner, front, floor: choice.floor }
     }
 
+    /// Takes a node out and gives what it touches.
+    fn take_single(&mut self, node: u32) -> Vec<Touched> {
+        self.alive[node as usize] = false;
+        let bounded = self.own[node as usize] < 0.0;
+        let pivot = if bounded { self.bounded_equation(node) } else { self.bounded_variable(node) };
+        let inverse = if pivot == 0.0 { 0.0 } else { 1.0 / pivot };
+        let row = std::mem::take(&mut self.adjacency[node as usize]);
+        let touched = row.iter().map(|&Entry { node, value }| Touched {
+            node,
+            left: [value, 0.0],
+            right: [value * inverse, 0.0],
+        });
+        touched.collect()
+    }
+
+    /// Takes a variable and its equation out and gives what they touch.
+    fn take_pair(&mut self, variable: u32, equation: u32) -> Vec<Touched> {
+        self.alive[variable as usize] = false;
+        self.alive[equation as usize] = false;
+        let first = std::mem::take(&mut self.adjacency[variable as usize]);
+        let second = std::mem::take(&mut self.adjacency[equation as usize]);
+        let coupling = first.iter().find(|entry| entry.node == equation).map_or(0.0, |entry| entry.value);
+        let (h, e) = (self.bounded_variable(variable), self.bounded_equation(equation));
+        let determinant = h * e - coupling * coupling;
+        let touched = union(&first, &second, (variable, equation)).map(|(node, a, b)| Touched {
+            node,
+            left: [a, b],
+            right: [(e * a - coupling * b) / determinant, (h * b - coupling * a) / determinant],
+        });
+        touched.collect()
+    }
+
     /// Subtracts the outer product in one row of the front.
-    fn update(
-        &mut self,
-        at: usize,
-        multiplier: [f64; 2],
-        front: &[u32],
-        left: &[[f64; 2]],
-        gone: (u32, Option<u32>),
-    ) {
-        let target = front[at] as usize;
-        let change = |number: usize| multiplier[0] * left[number][0] + multiplier[1] * left[number][1];
-        self.diagonal[target] -= change(at);
-        let old = std::mem::take(&mut self.adjacency[target]);
+    fn update(&mut self, target: &Touched, touched: &[Touched], gone: (u32, Option<u32>)) {
+        let change = |other: &Touched| target.right[0] * other.left[0] + target.right[1] * other.left[1];
+        let row = target.node as usize;
+        self.diagonal[row] -= change(target);
+        let old = std::mem::take(&mut self.adjacency[row]);
         let mut merged = std::mem::take(&mut self.merged);
         merged.clear();
-        let mut number = 0;
-        for entry in &old {
-            if entry.node == gone.0 || Some(entry.node) == gone.1 {
-                continue;
+        let mut others = touched.iter().filter(|other| other.node != target.node).peekable();
+        for entry in old.iter().filter(|entry| entry.node != gone.0 && Some(entry.node) != gone.1) {
+            while let Some(other) = others.next_if(|other| other.node < entry.node) {
+                merged.push(Entry { node: other.node, value: -change(other) });
             }
-            while number < front.len() && front[number] < entry.node {
-                if number != at {
-                    merged.push(Entry { node: front[number], value: -change(number) });
-                }
-                number += 1;
-            }
-            let mut value = entry.value;
-            if number < front.len() && front[number] == entry.node {
-                value -= change(number);
-                number += 1;
-            }
-            merged.push(Entry { node: entry.node, value });
+            let other = others.next_if(|other| other.node == entry.node);
+            merged.push(Entry { node: entry.node, value: entry.value - other.map_or(0.0, change) });
         }
-        for number in number..front.len() {
-            if number != at {
-                merged.push(Entry { node: front[number], value: -change(number) });
-            }
-        }
-        self.adjacency[target] = merged;
+        merged.extend(others.map(|other| Entry { node: other.node, value: -change(other) }));
+        self.adjacency[row] = merged;
         self.merged = old;
     }
 

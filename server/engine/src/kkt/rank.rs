@@ -23,6 +23,9 @@ use super::scaling::{NEGLIGIBLE, Scaling};
 /// A pivot may be this much smaller than the largest candidate.
 const THRESHOLD: f64 = 0.1;
 
+/// In the second phase a column may be this much better measured than the weakest of its row.
+const WEAKNESS: f64 = 0.5;
+
 /// A difference this much smaller than what was subtracted is rounding and counts as an exact zero.
 const CANCELLED: f64 = 1e-15;
 
@@ -387,7 +390,7 @@ impl<'a> Elimination<'a> {
                 dependent.push((length, row));
                 continue;
             }
-            for (column, _) in deviations.filter(|(_, size)| *size >= THRESHOLD * largest) {
+            for (column, _) in deviations.filter(|(_, size)| *size >= WEAKNESS * largest) {
                 let cost = (length - 1) * (self.members[column as usize].len() - 1);
                 let candidate = (cost, row, column);
                 best = Some(best.map_or(candidate, |best| best.min(candidate)));

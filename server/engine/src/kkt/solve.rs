@@ -74,8 +74,10 @@ impl<S: Scalar> Factor<S> {
         check_vectors(&self.analysis, solution)?;
         gather(&self.analysis, rhs, &mut self.work);
         gather(&self.analysis, solution, &mut self.correction);
-        let (residual, x) = (&mut self.work, &self.correction);
-        let mut bound: Vec<[f64; 2]> = residual.iter().map(|side| [side.value().abs(), 0.0]).collect();
+        let (residual, x, bound) = (&mut self.work, &self.correction, &mut self.bound);
+        for (bound, side) in bound.iter_mut().zip(&*residual) {
+            *bound = [side.value().abs(), 0.0];
+        }
         let mut weigh = |at: usize, factor: f64, x: f64| {
             bound[at][0] += (factor * x).abs();
             bound[at][1] += factor.abs();
@@ -93,7 +95,7 @@ impl<S: Scalar> Factor<S> {
         }
         let largest_x = x.iter().fold(0.0_f64, |most, x| most.max(x.value().abs()));
         let mut worst = Residual { largest: 0.0, backward_error: 0.0 };
-        for (residual, [terms, norm]) in residual.iter().zip(bound) {
+        for (residual, &mut [terms, norm]) in residual.iter().zip(bound) {
             let size = residual.value().abs();
             let rounding = 1e3 * f64::EPSILON * norm * largest_x;
             let denominator = if terms > rounding { terms } else { terms + norm * largest_x };

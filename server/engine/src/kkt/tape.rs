@@ -25,7 +25,7 @@ pub(super) struct Step {
 /// The kinds of pivots.
 #[derive(Clone, Copy, Debug)]
 pub(super) enum Kind {
-    /// One variable: positive, and not below half of its own weight.
+    /// One variable: positive.
     Variable,
     /// One equation: negative.
     Equation,

@@ -2,14 +2,14 @@
 //! equation for each, mass and energy balances of equipment, and headers that join units.
 
 /// The generator splitmix64 (Steele, Lea and Flood, OOPSLA 2014).
-pub struct Random(u64);
+pub(super) struct Random(u64);
 
 impl Random {
-    pub fn new(seed: u64) -> Self {
+    pub(super) fn new(seed: u64) -> Self {
         Self(seed)
     }
 
-    pub fn bits(&mut self) -> u64 {
+    pub(super) fn bits(&mut self) -> u64 {
         self.0 = self.0.wrapping_add(0x9e37_79b9_7f4a_7c15);
         let mut z = self.0;
         z = (z ^ (z >> 30)).wrapping_mul(0xbf58_476d_1ce4_e5b9);
@@ -18,40 +18,40 @@ impl Random {
     }
 
     /// Uniform between the two.
-    pub fn between(&mut self, low: f64, high: f64) -> f64 {
+    pub(super) fn between(&mut self, low: f64, high: f64) -> f64 {
         low + (high - low) * (self.bits() >> 11) as f64 / (1u64 << 53) as f64
     }
 
     /// One of the first whole numbers.
-    pub fn below(&mut self, count: usize) -> usize {
+    pub(super) fn below(&mut self, count: usize) -> usize {
         (self.bits() % count as u64) as usize
     }
 
     /// Whether something of this probability happens.
-    pub fn chance(&mut self, probability: f64) -> bool {
+    pub(super) fn chance(&mut self, probability: f64) -> bool {
         self.between(0.0, 1.0) < probability
     }
 }
 
 /// Equations as lists of (variable, coefficient), and a weight for each variable: `None` is free.
 #[derive(Clone, Default)]
-pub struct Plant {
-    pub rows: Vec<Vec<(u32, f64)>>,
-    pub weights: Vec<Option<f64>>,
+pub(super) struct Plant {
+    pub(super) rows: Vec<Vec<(u32, f64)>>,
+    pub(super) weights: Vec<Option<f64>>,
 }
 
-pub struct Shape {
-    pub units: usize,
-    pub streams: usize,
-    pub equipment: usize,
+pub(super) struct Shape {
+    pub(super) units: usize,
+    pub(super) streams: usize,
+    pub(super) equipment: usize,
     /// The share of variables that is measured.
-    pub measured: f64,
+    pub(super) measured: f64,
     /// Decades over which weights are spread, around 1e4.
-    pub decades: f64,
+    pub(super) decades: f64,
 }
 
 impl Plant {
-    pub fn new(seed: u64, shape: &Shape) -> Self {
+    pub(super) fn new(seed: u64, shape: &Shape) -> Self {
         let mut random = Random::new(seed);
         let mut plant = Self::default();
         for unit in 0..shape.units {

@@ -4,6 +4,13 @@
 //!
 //! `cargo bench --bench balance`
 
+#![allow(
+    clippy::unwrap_used,
+    clippy::expect_used,
+    clippy::panic,
+    reason = "a benchmark may stop at the first surprise"
+)]
+
 mod units;
 
 use std::hint::black_box;
@@ -72,8 +79,13 @@ fn peer() {
     let python = std::env::var("PEER_PYTHON").unwrap_or_else(|_| "python3".into());
     match Command::new(&python).args([script, "reheat_unit"]).output() {
         Ok(output) if output.status.success() => {
-            println!("general-purpose optimiser on the reheat unit: {}", String::from_utf8_lossy(&output.stdout).trim());
+            println!(
+                "general-purpose optimiser on the reheat unit: {}",
+                String::from_utf8_lossy(&output.stdout).trim()
+            );
         }
-        _ => println!("general-purpose optimiser: not measured ({python} lacks what tests/oracle/README.md names)"),
+        _ => println!(
+            "general-purpose optimiser: not measured ({python} lacks what tests/oracle/README.md names)"
+        ),
     }
 }

@@ -1,4 +1,11 @@
 //! The engine held against problems published elsewhere, each with its source beside it.
 
+#![allow(
+    clippy::unwrap_used,
+    clippy::expect_used,
+    clippy::panic,
+    reason = "a test may stop at the first surprise"
+)]
+
 mod networks;
 mod nonlinear;

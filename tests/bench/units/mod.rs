@@ -27,7 +27,8 @@ pub(crate) fn joined(count: usize) -> (String, HashMap<String, f64>) {
     let mut all = HashMap::new();
     for unit in 0..count {
         let prefix = format!("u{unit}_");
-        let once = |table: &&str| unit == 0 || !(table.starts_with("[search]") || table.starts_with("[steady]"));
+        let once =
+            |table: &&str| unit == 0 || !(table.starts_with("[search]") || table.starts_with("[steady]"));
         let (tables, given): (Vec<String>, Vec<String>) = split(&format!("\n[streams.{body}"))
             .filter(once)
             .map(|table| renamed(table, &names, &prefix, unit))
@@ -50,7 +51,10 @@ fn split(body: &str) -> impl Iterator<Item = &str> {
 fn first_row() -> HashMap<String, f64> {
     let mut lines = READINGS.lines();
     let (head, row) = (lines.next().unwrap_or_default(), lines.next().unwrap_or_default());
-    head.split(',').zip(row.split(',')).filter_map(|(tag, cell)| Some((tag.to_owned(), cell.parse().ok()?))).collect()
+    head.split(',')
+        .zip(row.split(','))
+        .filter_map(|(tag, cell)| Some((tag.to_owned(), cell.parse().ok()?)))
+        .collect()
 }
 
 fn names(plant: &Plant) -> Vec<String> {
@@ -59,7 +63,13 @@ fn names(plant: &Plant) -> Vec<String> {
     let tags = plant.tags.iter().map(|tag| &tag.name);
     let shafts = plant.shafts.iter().map(|shaft| &shaft.name);
     let indicators = plant.indicators.iter().map(|indicator| &indicator.name);
-    streams.chain(equipment).chain(tags).chain(shafts).chain(indicators).map(|name| name.value.clone()).collect()
+    streams
+        .chain(equipment)
+        .chain(tags)
+        .chain(shafts)
+        .chain(indicators)
+        .map(|name| name.value.clone())
+        .collect()
 }
 
 /// A table of the unit with a prefix before every name, its make-up and cooling water drawn from the headers. Of the
@@ -68,7 +78,7 @@ fn renamed(table: &str, names: &[String], prefix: &str, unit: usize) -> String {
     let mut text = String::with_capacity(table.len() * 2);
     for line in table.lines() {
         let literal = ["kind", "fluid", "description", "unit ", "unit=", "phase", "#"];
-        if line.starts_with("\"makeup.pressure\"") && unit % BLOCK > 0 {
+        if line.starts_with("\"makeup.pressure\"") && !unit.is_multiple_of(BLOCK) {
             continue;
         }
         if literal.iter().any(|key| line.trim_start().starts_with(key)) {
@@ -114,7 +124,10 @@ fn prefixed(text: &mut String, line: &str, names: &[String], prefix: &str) {
 fn headers(text: &mut String, count: usize) {
     let blocks = count.div_ceil(BLOCK);
     for system in ["makeup", "intake"] {
-        let _ = writeln!(text, "\n[streams.{system}_site]\nfluid = \"water\"\nphase = \"liquid\"\nto = \"{system}_main.inlet.site\"");
+        let _ = writeln!(
+            text,
+            "\n[streams.{system}_site]\nfluid = \"water\"\nphase = \"liquid\"\nto = \"{system}_main.inlet.site\""
+        );
         let _ = writeln!(text, "\n[equipment.{system}_main]\nkind = \"header\"");
         for block in 0..blocks {
             let _ = writeln!(

@@ -3,7 +3,7 @@
 //! Minimise `1/2 sum ((y - x)/sigma)^2` over the observations subject to `c(x) = 0` and bounds. Every observation and
 //! every reported quantity is ONE variable, so that the weights are diagonal and the pattern is that of the rows.
 
-use crate::equation::Row;
+use crate::equation::{Row, RowRole};
 use crate::equipment::{Knowledge, StreamData, System, VariableData};
 use crate::kkt::{Pattern, PatternError};
 
@@ -16,6 +16,8 @@ pub struct Problem {
     pub(crate) rows: Vec<Row>,
     pub(crate) streams: Vec<StreamData>,
     pub(crate) pattern: Pattern,
+    /// Whether each variable is only defined by a row, so that nothing else depends on it.
+    pub(crate) only_defined: Vec<bool>,
     /// Where the entries of the rows' local variables stand in the pattern, whose rows are sorted by column.
     places: Vec<u32>,
     /// Where each row's places begin.
@@ -46,12 +48,16 @@ impl Problem {
             columns.extend_from_slice(&sorted);
             row_start.push(columns.len() as u32);
         }
+        let defining = |row: usize| system.rows[row].role() == RowRole::Definition;
+        let only_defined =
+            system.variables.iter().map(|variable| variable.defined_by.is_some_and(defining)).collect();
         let pattern = Pattern::new(system.variables.len(), row_start, columns)?;
         Ok(Self {
             variables: system.variables,
             rows: system.rows,
             streams: system.streams,
             pattern,
+            only_defined,
             places,
             place_start,
             cache: Cache::default(),

@@ -40,7 +40,7 @@ const MOST_PHASE_CHANGES: usize = 5;
 /// the larger of value and sigma.
 const STEP_TOLERANCE: f64 = 1e-10;
 /// After a step this large, in sigmas, the factor is made anew.
-const STALE_STEP: f64 = 3.0;
+const STALE_STEP: f64 = 0.5;
 /// So is it when steps shrink no faster than this.
 const STALE_RATE: f64 = 0.05;
 /// Each equation closes to this much of its largest term.
@@ -332,10 +332,10 @@ impl<'a> Search<'a> {
     }
 
     /// Largest component of a step, in sigmas where observed and in thousandths of the scale elsewhere; and relative to
-    /// the larger of value and that unit.
+    /// the larger of value and that unit. What is only defined follows at the end and doesn't count.
     fn step_size(&self, scaling: &Scaling, step: &[f64]) -> (f64, f64) {
         let (mut size, mut relative) = (0.0_f64, 0.0_f64);
-        for (j, change) in step.iter().enumerate() {
+        for (j, change) in step.iter().enumerate().filter(|(j, _)| !self.problem.only_defined[*j]) {
             let moved = change.abs() * scaling.column[j];
             let unit =
                 if self.weight[j] > 0.0 { self.weight[j].sqrt().recip() } else { 1e-3 * scaling.column[j] };

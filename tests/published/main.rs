@@ -9,3 +9,5 @@
 
 mod networks;
 mod nonlinear;
+#[path = "../support/mod.rs"]
+mod support;

@@ -7,7 +7,9 @@
     reason = "a test may stop at the first surprise"
 )]
 
+mod heat_meter;
 mod networks;
 mod nonlinear;
+mod plants;
 #[path = "../support/mod.rs"]
 mod support;

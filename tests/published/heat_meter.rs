@@ -22,7 +22,8 @@ fn registers() -> Option<Vec<Registers>> {
     };
     let mut lines = text.lines();
     let head: Vec<&str> = lines.next().unwrap().split(',').collect();
-    let column = |word: &str| head.iter().position(|name| name.contains(word)).unwrap_or_else(|| panic!("{head:?}"));
+    let column =
+        |word: &str| head.iter().position(|name| name.contains(word)).unwrap_or_else(|| panic!("{head:?}"));
     let columns = [column("energy_heat"), column("volume_flow"), column("inlet_flow"), column("back_flow")];
     let row = |line: &str| {
         let cells: Vec<&str> = line.split(',').collect();
@@ -75,8 +76,9 @@ sigma = "0.0001 K"
 /// How many of the weeks pass the global test, and how many there are.
 fn passing(metered: &str, registers: &[Registers]) -> (usize, usize) {
     let plant = compiled(&plant(metered));
-    let weeks: Vec<(&Registers, &Registers)> =
-        (0..registers.len() / WEEK).map(|week| (&registers[week * WEEK], &registers[((week + 1) * WEEK).min(registers.len() - 1)])).collect();
+    let weeks: Vec<(&Registers, &Registers)> = (0..registers.len() / WEEK)
+        .map(|week| (&registers[week * WEEK], &registers[((week + 1) * WEEK).min(registers.len() - 1)]))
+        .collect();
     let passes = weeks.iter().filter(|(first, last)| {
         let used: Vec<f64> = last.iter().zip(*first).map(|(last, first)| last - first).collect();
         let hours = WEEK as f64;

@@ -7,9 +7,11 @@
     reason = "a test may stop at the first surprise"
 )]
 
+mod covariance;
 mod heat_meter;
 mod networks;
 mod nonlinear;
+mod oracles;
 mod plants;
 #[path = "../support/mod.rs"]
 mod support;

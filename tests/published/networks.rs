@@ -270,14 +270,19 @@ fn a_flow_at_its_bound_is_told() {
     let free = free.balance_of(&free.without(0, &unmeasured));
     let negative = |stream: &u32| free.quantity(&format!("s{stream}.mass_flow")).value.unwrap() < 0.0;
     assert!([1, 2, 7, 9].iter().any(negative), "the readings ask for a negative flow");
-    let at_bound: Vec<u32> = (1..=28).filter(|s| told.quantity(&format!("s{s}.mass_flow")).at_bound).collect();
+    let at_bound: Vec<u32> =
+        (1..=28).filter(|s| told.quantity(&format!("s{s}.mass_flow")).at_bound).collect();
     assert!(!at_bound.is_empty());
     assert_eq!(told.freedom(), free.freedom() + at_bound.len() as u32);
     assert!(told.statistic() > free.statistic());
     for stream in at_bound {
         let name = format!("s{stream}.mass_flow");
         assert_eq!(told.quantity(&name).value, Some(0.0));
-        assert!(told.balance.warnings.iter().any(|warning| warning.contains(&name)), "{:?}", told.balance.warnings);
+        assert!(
+            told.balance.warnings.iter().any(|warning| warning.contains(&name)),
+            "{:?}",
+            told.balance.warnings
+        );
     }
 }
 

@@ -42,7 +42,8 @@ fn every_value_and_sigma_agrees_with_the_optimiser() {
                     assert_eq!(indicator.value, None, "{what} can't be known");
                     continue;
                 }
-                let (value, sigma) = (quantity["value"].as_f64().unwrap(), quantity["sigma"].as_f64().unwrap());
+                let (value, sigma) =
+                    (quantity["value"].as_f64().unwrap(), quantity["sigma"].as_f64().unwrap());
                 let (found_value, found_sigma) = (indicator.value.unwrap(), indicator.sigma.unwrap());
                 near(&what, found_value, value, (1e-6 * value.abs()).max(1e-5 * sigma));
                 near(&format!("{what}, sigma"), found_sigma, sigma, 1e-4 * sigma + 1e-12 * value.abs());
@@ -67,7 +68,8 @@ fn a_loop_of_unmetered_pipes_and_an_unmetered_header_are_the_only_unknowns() {
             .collect();
         let unobservable = expected["rows"][0]["unobservable"].as_array().unwrap();
         let listed = |name: &&str| case.compiled.quantities().iter().any(|label| label.name == **name);
-        let mut wanted: Vec<&str> = unobservable.iter().filter_map(|name| name.as_str()).filter(listed).collect();
+        let mut wanted: Vec<&str> =
+            unobservable.iter().filter_map(|name| name.as_str()).filter(listed).collect();
         let mut unknown = unknown;
         wanted.sort_unstable();
         unknown.sort_unstable();
@@ -76,7 +78,10 @@ fn a_loop_of_unmetered_pipes_and_an_unmetered_header_are_the_only_unknowns() {
 }
 
 fn bits(balance: &Balance) -> Vec<u64> {
-    let values = balance.quantities.iter().flat_map(|quantity| [quantity.value, quantity.sigma, quantity.repeat_sigma]);
+    let values = balance
+        .quantities
+        .iter()
+        .flat_map(|quantity| [quantity.value, quantity.sigma, quantity.repeat_sigma]);
     let tags = balance.tags.iter().flat_map(|tag| [tag.reconciled, tag.statistic, tag.redundancy]);
     values.chain(tags).map(|value| value.map_or(0, f64::to_bits)).collect()
 }
@@ -156,7 +161,8 @@ fn a_start_elsewhere_along_unknown_directions_changes_nothing_known() {
             .map(|reading| reading.map(|reading| Reading { mean: reading.mean * 1.01, ..reading }))
             .collect();
         let text = std::fs::read_to_string(path("tests/plants/reheat_unit.toml")).unwrap();
-        let untyped: String = text.lines().filter(|l| !l.starts_with("typical")).collect::<Vec<_>>().join("\n");
+        let untyped: String =
+            text.lines().filter(|l| !l.starts_with("typical")).collect::<Vec<_>>().join("\n");
         let free = Case::with(&untyped, "tests/plants/reheat_unit");
         let anchor = free.compiled.anchor(&shifted);
         assert!(anchor.is_some());

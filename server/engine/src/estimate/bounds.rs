@@ -116,9 +116,10 @@ fn is_hard(data: &VariableData) -> bool {
 }
 
 /// The longest share of a step, at most one, that moves no pressure by more than half of itself, no temperature by
-/// more than 60 K, no enthalpy by more than 0.6 MJ/kg, and none of them nearer to its limit than a tenth of the way.
-pub(super) fn longest(data: &[VariableData], x: &[f64], step: &[f64], scaling: &Scaling) -> f64 {
-    let mut share = 1.0_f64;
+/// more than 60 K, no enthalpy by more than 0.6 MJ/kg, and none of them nearer to its limit than a tenth of the way; and
+/// the variable that sets it.
+pub(super) fn longest(data: &[VariableData], x: &[f64], step: &[f64], scaling: &Scaling) -> (f64, Option<u32>) {
+    let (mut share, mut by) = (1.0_f64, None);
     for (j, variable) in data.iter().enumerate() {
         let cap = match variable.role {
             VariableRole::Pressure => 0.5 * x[j].abs(),
@@ -127,15 +128,12 @@ pub(super) fn longest(data: &[VariableData], x: &[f64], step: &[f64], scaling: &
             _ => continue,
         };
         let moved = step[j] * scaling.column[j];
-        if moved.abs() > cap {
-            share = share.min(cap / moved.abs());
-        }
-        if is_hard(variable) {
-            let room = if moved < 0.0 { x[j] - variable.lower } else { variable.upper - x[j] };
-            if moved.abs() > room && room > 0.0 {
-                share = share.min((0.9995 * room) / moved.abs());
-            }
+        let room = if moved < 0.0 { x[j] - variable.lower } else { variable.upper - x[j] };
+        let cap = if is_hard(variable) && room > 0.0 { cap.min(0.9995 * room) } else { cap };
+        if moved.abs() * share > cap {
+            share = cap / moved.abs();
+            by = Some(j as u32);
         }
     }
-    share
+    (share, by)
 }

@@ -81,7 +81,13 @@ pub(super) fn proximal(
         scaling.jacobian(&here, &mut values);
         let weights: Vec<f64> = weight.iter().zip(scale).map(|(w, s)| w * s * s).collect();
         let system = System { problem, situation, weights: &weights, values: &values, strength, softening };
-        let mut ready = system.factor(factor.take())?;
+        let Ok(mut ready) = system.factor(factor.take()) else {
+            strength *= 10.0;
+            if strength > STRONGEST {
+                break;
+            }
+            continue;
+        };
         let mut right = Vectors::zeros(ready.analysis());
         let mut step = Vectors::zeros(ready.analysis());
         for (j, slot) in right.columns.iter_mut().enumerate() {
@@ -164,7 +170,7 @@ fn take_step(
     };
     let now = (infeasibility(here), situation.objective(x));
     let from = x.clone();
-    let mut share = longest(&problem.variables, &from, step, scaling);
+    let (mut share, _) = longest(&problem.variables, &from, step, scaling);
     for _ in 0..8 {
         for (j, value) in x.iter_mut().enumerate() {
             *value = from[j] + share * step[j] * scaling.column[j];

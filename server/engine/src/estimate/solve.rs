@@ -39,6 +39,8 @@ const MOST_PHASE_CHANGES: usize = 5;
 /// A solve has converged when the error left after its last step, extrapolated from the steps' ratio, is this much of
 /// the larger of value and sigma.
 const STEP_TOLERANCE: f64 = 1e-10;
+/// A variable that cuts so many steps in a row short runs away.
+const RUNAWAY: usize = 3;
 /// After a step this large, in sigmas, the factor is made anew.
 const STALE_STEP: f64 = 0.5;
 /// So is it when steps shrink no faster than this.
@@ -100,6 +102,11 @@ struct Search<'a> {
     x: Vec<f64>,
     forms: Vec<Form>,
     active: ActiveSet,
+    /// Where the search began.
+    start: Vec<f64>,
+    /// Variables that ran away and are held where they began: what the equations hardly see can't be known, and must
+    /// not disturb the rest.
+    held: Vec<u32>,
     here: Evaluation,
     /// Scaled derivatives of the equations at the point reached.
     values: Vec<f64>,
@@ -114,6 +121,8 @@ enum Trouble {
     Structure,
     /// A pressure or temperature ran into its limit.
     Blocked(u32, Side),
+    /// A pressure, temperature or enthalpy that the equations hardly see runs away.
+    Runaway(u32),
     /// It can't go on.
     Stuck,
 }
@@ -139,9 +148,11 @@ impl<'a> Search<'a> {
             anchor,
             weight,
             mean,
+            start: x.clone(),
             x,
             forms,
             active,
+            held: Vec::new(),
             here,
             values,
             multipliers: Vec::new(),
@@ -175,6 +186,10 @@ impl<'a> Search<'a> {
                 Err(Trouble::Blocked(variable, side)) => {
                     self.active.block(&self.problem.variables, &mut self.x, variable, side);
                 }
+                Err(Trouble::Runaway(variable)) => {
+                    self.x.clone_from(&self.start);
+                    self.held.push(variable);
+                }
                 Err(Trouble::Structure) if !local => local = true,
                 Err(Trouble::Structure | Trouble::Stuck) => break,
             }
@@ -202,7 +217,9 @@ impl<'a> Search<'a> {
     }
 
     fn column_kind(&self, variable: usize) -> u8 {
-        let fixed = self.situation.exact[variable].is_some() || self.active.contains(variable as u32);
+        let fixed = self.situation.exact[variable].is_some()
+            || self.active.contains(variable as u32)
+            || self.held.contains(&(variable as u32));
         match (fixed, self.weight[variable] > 0.0) {
             (true, _) => FIXED,
             (false, true) => WEIGHTED,
@@ -261,6 +278,7 @@ impl<'a> Search<'a> {
         let mut damping = Damping::default();
         let mut filter = Filter::default();
         let mut previous = f64::NAN;
+        let mut running = (None, 0);
         self.multipliers.clear();
         self.multipliers.resize(self.problem.rows.len(), 0.0);
         self.start(structure)?;
@@ -293,6 +311,12 @@ impl<'a> Search<'a> {
                 }
                 renew = true;
                 continue;
+            }
+            if let (share, Some(variable)) = longest(&self.problem.variables, &self.x, &step.columns, scaling) {
+                running = if running.0 == Some(variable) { (Some(variable), running.1 + 1) } else { (Some(variable), 1) };
+                if running.1 > RUNAWAY && share < 0.5 && self.weight[variable as usize] == 0.0 {
+                    return Err(Trouble::Runaway(variable));
+                }
             }
             scaling.jacobian(&self.here, &mut self.values);
             let rate = if previous.is_finite() { (size / previous).min(1.0) } else { 1.0 };
@@ -349,7 +373,7 @@ impl<'a> Search<'a> {
     fn advance(&mut self, scaling: &Scaling, step: &Vectors<f64>, size: f64, filter: &mut Filter) -> bool {
         let now = (self.infeasibility(scaling), self.situation.objective(&self.x));
         let from = self.x.clone();
-        let mut share = longest(&self.problem.variables, &from, &step.columns, scaling);
+        let (mut share, _) = longest(&self.problem.variables, &from, &step.columns, scaling);
         for _ in 0..9 {
             for (j, value) in self.x.iter_mut().enumerate() {
                 *value = from[j] + share * step.columns[j] * scaling.column[j];
@@ -444,8 +468,9 @@ impl<'a> Search<'a> {
             free
         };
         let undefined = self.here.undefined.iter().map(|row| self.problem.rows[*row as usize].variables()[0]);
+        let unknown = undefined.chain(self.held.iter().copied()).collect();
         let values = std::mem::take(&mut self.values);
-        Linearisation::new(structure, &values, self.situation, degrees_of_freedom, undefined.collect())
+        Linearisation::new(structure, &values, self.situation, degrees_of_freedom, unknown)
             .map_err(|error| Failure::Numeric { message: error.to_string() })
     }
 

@@ -58,7 +58,7 @@ fn the_guide_s_example_of_simultaneous_readings() {
     });
     let root = covariance.cholesky().unwrap().l();
     let mut system = System::default();
-    let mut variable = |system: &mut System, name: &str| {
+    let variable = |system: &mut System, name: &str| {
         system.variable(name, Dimension::RATIO, VariableRole::Other, Knowledge::Free)
     };
     let errors = ["e1", "e2", "e3"].map(|name| variable(&mut system, name));

@@ -224,7 +224,8 @@ fn net_15_cases() {
 /// Process Des. Dev. 15 (1976) 175-183; A. Kretsovalis and R. S. H. Mah, Chem. Eng. Sci. 42 (1987), from memory).
 #[test]
 fn classification() {
-    let table: &[(&str, &[u32], &[u32], &[u32], u32)] = &[
+    type Line<'a> = (&'a str, &'a [u32], &'a [u32], &'a [u32], u32);
+    let table: &[Line<'_>] = &[
         // network, unmeasured, of these unobservable, nonredundant measured, redundant equations left
         ("net_4", &[3, 4], &[], &[], 2),
         ("net_4", &[3, 4, 5, 6], &[], &[1, 2], 0),

@@ -5,7 +5,8 @@ use std::path::{Path, PathBuf};
 
 use meterwright_engine::plant::parse;
 use meterwright_engine::{
-    Balance, CompiledPlant, Fault, IndicatorBalance, Label, Outcome, Position, QuantityBalance, Reading, TagBalance,
+    Balance, CompiledPlant, Fault, IndicatorBalance, Label, Outcome, Position, QuantityBalance, Reading,
+    TagBalance,
 };
 
 /// A compiled plant with rows of readings.
@@ -40,8 +41,11 @@ impl Case {
         let log = std::fs::read_to_string(path(&format!("{stem}.csv"))).unwrap();
         let mut lines = log.lines();
         let head: Vec<&str> = lines.next().unwrap().split(',').collect();
-        let columns: Vec<usize> =
-            compiled.tags().iter().map(|tag| head.iter().position(|name| *name == tag.name).unwrap()).collect();
+        let columns: Vec<usize> = compiled
+            .tags()
+            .iter()
+            .map(|tag| head.iter().position(|name| *name == tag.name).unwrap())
+            .collect();
         let rows = lines
             .map(|line| {
                 let cells: Vec<&str> = line.split(',').collect();
@@ -86,7 +90,10 @@ pub(crate) fn readings(compiled: &CompiledPlant, values: &[(&str, f64)]) -> Vec<
 }
 
 fn place(labels: &[Label], name: &str) -> usize {
-    labels.iter().position(|label| label.name == name).unwrap_or_else(|| panic!("`{name}` isn't in the result"))
+    labels
+        .iter()
+        .position(|label| label.name == name)
+        .unwrap_or_else(|| panic!("`{name}` isn't in the result"))
 }
 
 /// A balance with the names of what it holds.

@@ -6,6 +6,7 @@
     clippy::panic,
     reason = "a test may stop at the first surprise"
 )]
+#![allow(clippy::format_push_string, reason = "plant files are put together once, where the words matter")]
 
 mod covariance;
 mod heat_meter;

@@ -118,7 +118,12 @@ fn is_hard(data: &VariableData) -> bool {
 /// The longest share of a step, at most one, that moves no pressure by more than half of itself, no temperature by
 /// more than 60 K, no enthalpy by more than 0.6 MJ/kg, and none of them nearer to its limit than a tenth of the way; and
 /// the variable that sets it.
-pub(super) fn longest(data: &[VariableData], x: &[f64], step: &[f64], scaling: &Scaling) -> (f64, Option<u32>) {
+pub(super) fn longest(
+    data: &[VariableData],
+    x: &[f64],
+    step: &[f64],
+    scaling: &Scaling,
+) -> (f64, Option<u32>) {
     let (mut share, mut by) = (1.0_f64, None);
     for (j, variable) in data.iter().enumerate() {
         let cap = match variable.role {

@@ -14,7 +14,8 @@ use super::evaluation::Evaluation;
 use super::failure::Failure;
 use super::problem::{Problem, Situation};
 use super::scaling::{Anchor, Scaling};
-use super::solve::{Filter, Solution, solve_from};
+use super::solve::{Solution, solve_from};
+use super::step::Filter;
 
 /// Where proximal steps end.
 pub(super) struct Softened {

@@ -1,7 +1,8 @@
 //! Non-linear weighted least squares under equations: the numeric half of the engine.
 //!
 //! It knows variables, rows, observations and what is exact; not tags, not plants. In files named after the nouns of
-//! the mathematics: [`problem`], [`evaluation`], [`scaling`], [`start`], [`solve`], [`bounds`], [`linearisation`].
+//! the mathematics: `problem`, `evaluation`, `scaling`, `start`,
+//! `cold`, `solve`, `step`, `bounds`, `linearisation`.
 
 mod bounds;
 mod cache;
@@ -14,6 +15,7 @@ mod problem;
 mod scaling;
 mod solve;
 mod start;
+mod step;
 
 pub use cold::solve_cold;
 pub use failure::Failure;

@@ -13,6 +13,7 @@ use super::linearisation::Linearisation;
 use super::phases;
 use super::problem::{Problem, Situation};
 use super::scaling::{Anchor, Scaling};
+use super::step::{Damping, Filter};
 
 /// A state that closes every equation with the least sum of squares.
 pub struct Solution {
@@ -312,8 +313,13 @@ impl<'a> Search<'a> {
                 renew = true;
                 continue;
             }
-            if let (share, Some(variable)) = longest(&self.problem.variables, &self.x, &step.columns, scaling) {
-                running = if running.0 == Some(variable) { (Some(variable), running.1 + 1) } else { (Some(variable), 1) };
+            if let (share, Some(variable)) = longest(&self.problem.variables, &self.x, &step.columns, scaling)
+            {
+                running = if running.0 == Some(variable) {
+                    (Some(variable), running.1 + 1)
+                } else {
+                    (Some(variable), 1)
+                };
                 if running.1 > RUNAWAY && share < 0.5 && self.weight[variable as usize] == 0.0 {
                     return Err(Trouble::Runaway(variable));
                 }
@@ -504,55 +510,3 @@ const NULL_PART: f64 = 1e-9;
 const FREE: u8 = 0;
 const WEIGHTED: u8 = 1;
 const FIXED: u8 = 2;
-
-/// Proximal damping of a step, zero unless steps fail.
-#[derive(Default)]
-struct Damping {
-    strength: f64,
-}
-
-impl Damping {
-    fn is_zero(&self) -> bool {
-        self.strength == 0.0
-    }
-
-    /// Raises it; false when that makes no sense any more.
-    fn raise(&mut self) -> bool {
-        self.strength = if self.strength == 0.0 { 1e-4 } else { self.strength * 100.0 };
-        self.strength < 1e8
-    }
-
-    /// Lowers it; says whether there was any.
-    fn lower(&mut self) -> bool {
-        let any = !self.is_zero();
-        self.strength = if self.strength < 1e-5 { 0.0 } else { self.strength * 0.1 };
-        any
-    }
-
-    fn columns(&self, x: &[f64]) -> Vec<f64> {
-        if self.is_zero() { Vec::new() } else { vec![self.strength; x.len()] }
-    }
-}
-
-/// Pairs of infeasibility and objective that a new point must not be dominated by: R. Fletcher and S. Leyffer,
-/// "Nonlinear programming without a penalty function", Mathematical Programming 91 (2002) 239-269.
-#[derive(Default)]
-pub(super) struct Filter {
-    entries: Vec<(f64, f64)>,
-}
-
-impl Filter {
-    pub(super) fn accepts(&self, then: (f64, f64), now: (f64, f64)) -> bool {
-        let better = |(theta, phi): (f64, f64)| {
-            then.0 <= (1.0 - 1e-4) * theta || then.1 <= phi - 1e-4 * theta || then.0 < 1e-9
-        };
-        then.0.is_finite()
-            && then.1.is_finite()
-            && better(now)
-            && self.entries.iter().all(|entry| better(*entry))
-    }
-
-    pub(super) fn add(&mut self, entry: (f64, f64)) {
-        self.entries.push(entry);
-    }
-}

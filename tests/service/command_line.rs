@@ -151,7 +151,9 @@ fn a_balance_has_the_numbers_that_can_be_worked_out_by_hand() {
     close(&flow["statistic"], 1.0);
     assert_eq!((&flow["class"], &flow["verdict"]), (&"redundant".into(), &"trusted".into()));
     let bystander = &first["tags"][3];
-    assert_eq!((&bystander["quantity"], &bystander["verdict"]), (&Value::Null, &"excluded".into()));
+    // A tag that reads nothing enters no balance: its reading is kept, and nothing checks it.
+    assert_eq!((&bystander["quantity"], &bystander["verdict"]), (&Value::Null, &"unchecked".into()));
+    assert!(bystander["measured"].is_number(), "{bystander}");
     close(&first["givens"][0]["reconciled"], -0.5);
     close(&first["indicators"][0]["value"], 100.0 * 59.5 / 100.5);
     close(&balances[1]["global_test"]["statistic"], 0.25);

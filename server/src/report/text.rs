@@ -168,7 +168,7 @@ fn verdict(label: &Label, balance: &TagBalance) -> String {
     });
     match (balance.verdict, balance.class) {
         (Verdict::Suspect, _) => "SUSPECT: the rest disagrees".to_owned(),
-        (Verdict::Excluded, _) if label.quantity.is_none() => "in no balance".to_owned(),
+        (_, TagClass::Nonredundant) if label.quantity.is_none() => "in no balance".to_owned(),
         (Verdict::Excluded, _) => "not used".to_owned(),
         (_, TagClass::Nonredundant) => "unchecked: nothing else tells".to_owned(),
         (Verdict::Unchecked, TagClass::Redundant) => format!("unchecked (would show only {from})"),

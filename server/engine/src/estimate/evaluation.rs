@@ -2,7 +2,7 @@
 
 use crate::equation::{EquationError, Form, Held, Row, RowRole};
 
-use super::problem::Problem;
+use super::problem::{Problem, Shape};
 
 /// Residuals and derivatives of all rows at one point; reusable.
 #[derive(Clone, Debug, Default)]
@@ -41,15 +41,17 @@ impl Evaluation {
     /// Evaluates the laws alone, after an evaluation of all rows: linear ones keep their derivatives, and definitions,
     /// which determine nothing but their own variable, are left where they are.
     pub(crate) fn laws_at(&mut self, problem: &Problem, x: &[f64], forms: &[Form]) -> Result<(), NoValue> {
-        for (number, row) in problem.rows.iter().enumerate() {
-            if let Some(linear) = row.linear() {
-                let terms = row.variables().iter().zip(&linear.coefficients).map(|(v, c)| x[*v as usize] * c);
-                self.residual[number] = linear.constant + terms.sum::<f64>();
-            } else if row.role() == RowRole::Law {
-                self.jacobian[problem.pattern.range(number)].fill(0.0);
-                self.row(problem, number, row, x, forms)?;
-            } else {
-                self.residual[number] = 0.0;
+        for (number, shape) in problem.shapes.iter().enumerate() {
+            match shape {
+                Shape::Linear(constant) => {
+                    let terms = problem.locals(number).iter().zip(problem.coefficients(number));
+                    self.residual[number] = terms.fold(*constant, |sum, (v, c)| sum + x[*v as usize] * c);
+                }
+                Shape::Law => {
+                    self.jacobian[problem.pattern.range(number)].fill(0.0);
+                    self.row(problem, number, &problem.rows[number], x, forms)?;
+                }
+                Shape::Definition => self.residual[number] = 0.0,
             }
         }
         Ok(())
@@ -84,7 +86,7 @@ impl Evaluation {
         x: &[f64],
         forms: &[Form],
     ) -> Result<(), NoValue> {
-        let variables = row.variables();
+        let variables = problem.locals(number);
         self.local.clear();
         self.local.extend(variables.iter().map(|variable| x[*variable as usize]));
         self.gradient.resize(variables.len().max(self.gradient.len()), 0.0);

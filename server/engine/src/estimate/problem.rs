@@ -9,6 +9,17 @@ use crate::kkt::{Pattern, PatternError};
 
 use super::cache::Cache;
 
+/// What it takes to evaluate a row.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(crate) enum Shape {
+    /// A sum with this constant.
+    Linear(f64),
+    /// A law with derivatives of its own.
+    Law,
+    /// A definition.
+    Definition,
+}
+
 /// Variables, rows and their pattern, with the analyses made of them so far. `Send + Sync`; solves take it by
 /// reference.
 pub struct Problem {
@@ -22,6 +33,11 @@ pub struct Problem {
     places: Vec<u32>,
     /// Where each row's places begin.
     place_start: Vec<u32>,
+    /// The rows once more in three plain arrays, so that evaluating thousands of them doesn't hunt through memory: what
+    /// kind each is, and beside `places` its local variables and, where it is linear, its coefficients.
+    pub(crate) shapes: Vec<Shape>,
+    locals: Vec<u32>,
+    coefficients: Vec<f64>,
     pub(crate) cache: Cache,
 }
 
@@ -51,6 +67,9 @@ impl Problem {
         let defining = |row: usize| system.rows[row].role() == RowRole::Definition;
         let only_defined =
             system.variables.iter().map(|variable| variable.defined_by.is_some_and(defining)).collect();
+        let locals = system.rows.iter().flat_map(|row| row.variables().iter().copied()).collect();
+        let coefficients = system.rows.iter().flat_map(coefficients).collect();
+        let shapes = system.rows.iter().map(shape).collect();
         let pattern = Pattern::new(system.variables.len(), row_start, columns)?;
         Ok(Self {
             variables: system.variables,
@@ -60,13 +79,30 @@ impl Problem {
             only_defined,
             places,
             place_start,
+            shapes,
+            locals,
+            coefficients,
             cache: Cache::default(),
         })
     }
 
     /// Where the derivatives by a row's local variables stand in the pattern.
     pub(crate) fn places(&self, row: usize) -> &[u32] {
-        &self.places[self.place_start[row] as usize..self.place_start[row + 1] as usize]
+        &self.places[self.local_range(row)]
+    }
+
+    /// A row's local variables.
+    pub(crate) fn locals(&self, row: usize) -> &[u32] {
+        &self.locals[self.local_range(row)]
+    }
+
+    /// A linear row's coefficients of its local variables.
+    pub(crate) fn coefficients(&self, row: usize) -> &[f64] {
+        &self.coefficients[self.local_range(row)]
+    }
+
+    fn local_range(&self, row: usize) -> std::ops::Range<usize> {
+        self.place_start[row] as usize..self.place_start[row + 1] as usize
     }
 
     /// Number of variables.
@@ -92,6 +128,18 @@ impl Problem {
         });
         Situation { exact: exact.collect(), observations: Vec::new() }
     }
+}
+
+fn shape(row: &Row) -> Shape {
+    match (row.role(), row.linear()) {
+        (RowRole::Definition, _) => Shape::Definition,
+        (RowRole::Law, Some(linear)) => Shape::Linear(linear.constant),
+        (RowRole::Law, None) => Shape::Law,
+    }
+}
+
+fn coefficients(row: &Row) -> Vec<f64> {
+    row.linear().map_or_else(|| vec![0.0; row.variables().len()], |linear| linear.coefficients.clone())
 }
 
 /// One observed value of a variable.

@@ -375,3 +375,17 @@ fn a_reader_that_goes_away_ends_the_program_quietly() {
     let (status, _, errors) = ended(&program.wait_with_output().unwrap());
     assert_eq!((status, errors.as_str()), (0, ""));
 }
+
+#[test]
+fn faults_of_the_text_and_of_its_meaning_are_told_together() {
+    let plant = PLANT.replacen("unit = \"t/h\"", "unit = \"t/hh\"", 1).replacen(
+        "kind = \"header\"",
+        "kind = \"heder\"",
+        1,
+    );
+    assert_ne!(plant, PLANT);
+    let (status, output, errors) = reconcile(&plant, LOG, BY_ROW);
+    assert_eq!((status, output.as_str()), (1, ""));
+    assert!(errors.contains("unknown unit `t/hh`; did you mean `t/h`?"), "{errors}");
+    assert!(errors.contains("unknown equipment kind `heder`; did you mean `header`?"), "{errors}");
+}

@@ -91,8 +91,14 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     let rule = rule(arguments)?;
     let text = read(&arguments.plant)?;
     let at = |faults: Vec<Fault>| plant_faults(&arguments.plant, &text, &faults);
-    let plant = plant::parse(&text).map_err(|faults| Stop::Input(at(faults)))?;
+    let (plant, mut faults) = plant::parse_leniently(&text);
+    let Some(plant) = plant else { return Err(Stop::Input(at(faults))) };
     let compiled = CompiledPlant::compile(&plant);
+    if !faults.is_empty() {
+        faults.extend(compiled.err().into_iter().flatten());
+        faults.sort();
+        return Err(Stop::Input(at(faults)));
+    }
     let expectation = match Expectation::of(&plant) {
         Ok(expectation) => expectation,
         Err(fault) => {

@@ -36,23 +36,32 @@ const LONGEST_FILE: usize = 4 << 20;
 /// # Errors
 /// Every fault of the text in its order (the first 200); where it is no TOML, only what makes it none.
 pub fn parse(text: &str) -> Result<Plant, Vec<Fault>> {
+    match parse_leniently(text) {
+        (Some(plant), faults) if faults.is_empty() => Ok(plant),
+        (_, faults) => Err(faults),
+    }
+}
+
+/// Reads a plant file as far as it can be read: its faults, and the plant without what is at fault, unless a stream, a
+/// machine or another part that the rest hangs on is missing. Compiling that plant tells the faults of its meaning, so
+/// that a user sees all of them at once.
+pub fn parse_leniently(text: &str) -> (Option<Plant>, Vec<Fault>) {
     if text.len() > LONGEST_FILE {
         let message = format!("the plant file is larger than {} MiB", LONGEST_FILE >> 20);
-        return Err(vec![Fault { span: Span::default(), message }]);
+        return (None, vec![Fault { span: Span::default(), message }]);
     }
     let (document, errors) = DeTable::parse_recoverable(text);
     let faults = Faults::new(text);
     if errors.is_empty() {
         let root = Reader::new(document.get_ref(), "the plant file".to_owned(), Span::default(), &faults);
-        let plant = read(root, &faults);
-        let faults = faults.into_sorted();
-        return if faults.is_empty() { Ok(Plant { revision: revision(text), ..plant }) } else { Err(faults) };
+        let plant = read(root, &faults).map(|plant| Plant { revision: revision(text), ..plant });
+        return (plant, faults.into_sorted());
     }
     for error in &errors {
         let span: Span = error.span().unwrap_or_default().into();
         faults.add_with(span, || syntax_message(error.message(), text.get(span.start..span.end)));
     }
-    Err(faults.into_sorted())
+    (None, faults.into_sorted())
 }
 
 /// SHA-256 of the text in lower-case hexadecimal.
@@ -71,7 +80,8 @@ fn syntax_message(message: &str, place: Option<&str>) -> String {
     }
 }
 
-fn read<'a>(mut root: Reader<'a>, faults: &'a Faults<'a>) -> Plant {
+/// The plant, unless a part of its network could not be read.
+fn read<'a>(mut root: Reader<'a>, faults: &'a Faults<'a>) -> Option<Plant> {
     let names = Names::collect(&root, faults);
     let mut plant = site::silent();
     check_format(&mut root);
@@ -89,7 +99,14 @@ fn read<'a>(mut root: Reader<'a>, faults: &'a Faults<'a>) -> Plant {
     plant.search = search::read(&mut root);
     plant.steady = search::read_steady(&mut root, &names, faults);
     root.finish();
-    plant
+    let network = [
+        ("stream", plant.streams.len()),
+        ("equipment", plant.equipment.len()),
+        ("shaft", plant.shafts.len()),
+        ("indicator", plant.indicators.len()),
+        ("fluid", plant.fluids.len()),
+    ];
+    network.iter().all(|(what, read)| names.count(what) == *read).then_some(plant)
 }
 
 fn check_format(root: &mut Reader<'_>) {

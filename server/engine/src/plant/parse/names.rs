@@ -34,6 +34,14 @@ pub(super) struct Names<'a> {
 }
 
 impl<'a> Names<'a> {
+    /// How many things of a sort the file defines.
+    pub(super) fn count(&self, what: &str) -> usize {
+        if what == "fluid" {
+            return self.fluids.len();
+        }
+        self.shared.values().filter(|sort| **sort == what).count()
+    }
+
     /// Collects the names, reporting those that are no names or stand for two things.
     pub(super) fn collect(root: &Reader<'a>, faults: &Faults<'_>) -> Self {
         let mut defined = Vec::new();

@@ -162,11 +162,9 @@ fn every_kind_s_file_says_its_ports_and_equations() {
         let text =
             fs::read_to_string(&path).unwrap_or_else(|_| panic!("{} has no file of its own", kind.name()));
         let head: String = text.lines().take_while(|line| line.starts_with("//!")).collect();
-        assert!(
-            head.contains("Ports") || head.contains("ports"),
-            "{}: its doc block lacks the ports",
-            path.display()
-        );
+        let head = head.to_lowercase();
+        assert!(head.contains("port"), "{}: its doc block doesn't speak of ports", path.display());
+        assert!(head.contains("equation"), "{}: its doc block doesn't speak of equations", path.display());
     }
 }
 
@@ -178,6 +176,6 @@ fn files_stay_short() {
             continue;
         }
         let lines = fs::read_to_string(&path).unwrap().lines().count();
-        assert!(lines <= 560, "{} has {lines} lines: split it", path.display());
+        assert!(lines <= 520, "{} has {lines} lines: split it", path.display());
     }
 }

@@ -1,7 +1,7 @@
 //! Gearbox: passes shaft power on.
 //!
 //! No ports. Quantities: `efficiency` (exactly one unless given): of what is made on its shaft it takes
-//! `1 - efficiency`.
+//! `1 - efficiency`. Equations: none of its own; the shaft's balance takes that share of what is made.
 
 use super::{Kind, Machine, Port, QuantityRule, ShaftRole, System, motor};
 use crate::quantity::Dimension;

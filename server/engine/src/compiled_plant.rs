@@ -5,7 +5,7 @@ use crate::balance::{
     Verdict,
 };
 use crate::compile::{self, Compiled, Exclusion, Instrument, Observed, SoftGiven};
-use crate::equipment::{Machine, VariableData, VariableRole};
+use crate::equipment::{Machine, VariableRole};
 use crate::estimate::{self, Anchor, Failure, Observation, Problem, Situation, Solution};
 use crate::fault::Fault;
 use crate::kkt::FactorError;
@@ -182,7 +182,13 @@ impl CompiledPlant {
         let linear = &solution.linearisation;
         let variances = linear.variances()?;
         let limit = self.largest(observations);
-        let told = Told { solution, variances: &variances.total, repeat: variances.repeat.as_deref(), limit };
+        let told = Told {
+            roles: &self.problem.roles,
+            solution,
+            variances: &variances.total,
+            repeat: variances.repeat.as_deref(),
+            limit,
+        };
         let (residuals, places) = self.residuals(observations, &told);
         let judged = verdict::judge(&residuals, &self.limits);
         let tags = self.tag_balances(observations, &told, &residuals, &judged, &places);
@@ -211,7 +217,7 @@ impl CompiledPlant {
         let mut largest = Largest { mass_flow: 0.0, power: 0.0 };
         for observation in &observations.situation.observations {
             let size = observation.value.abs();
-            match self.problem.variables[observation.variable as usize].role {
+            match self.problem.roles[observation.variable as usize] {
                 VariableRole::MassFlow => largest.mass_flow = largest.mass_flow.max(size),
                 VariableRole::Power => largest.power = largest.power.max(size),
                 _ => {}
@@ -279,7 +285,7 @@ impl CompiledPlant {
             }
         }
         let one = |variable: &u32| {
-            let known = told.known(*variable, &self.problem.variables[*variable as usize]);
+            let known = told.known(*variable);
             let class = match known {
                 None => QuantityClass::Unobservable,
                 Some(_) if redundant[*variable as usize] => QuantityClass::Redundant,
@@ -298,7 +304,7 @@ impl CompiledPlant {
 
     fn indicator_balances(&self, told: &Told<'_>) -> Vec<IndicatorBalance> {
         let one = |variable: &u32| {
-            let known = told.known(*variable, &self.problem.variables[*variable as usize]);
+            let known = told.known(*variable);
             IndicatorBalance {
                 value: known.map(|(value, _)| value),
                 sigma: known.map(|(_, sigma)| sigma),
@@ -358,6 +364,7 @@ struct Largest {
 
 /// A solution with its uncertainties, ready to be told.
 struct Told<'a> {
+    roles: &'a [VariableRole],
     solution: &'a Solution,
     variances: &'a [f64],
     repeat: Option<&'a [f64]>,
@@ -371,10 +378,10 @@ impl Told<'_> {
     }
 
     /// Value and standard uncertainty of a variable, if it can be known.
-    fn known(&self, variable: u32, data: &VariableData) -> Option<(f64, f64)> {
+    fn known(&self, variable: u32) -> Option<(f64, f64)> {
         let place = variable as usize;
         let (value, sigma) = (self.solution.x[place], self.variances[place].sqrt());
-        let span = match data.role {
+        let span = match self.roles[place] {
             VariableRole::Pressure => value.abs(),
             VariableRole::Temperature => 100.0,
             VariableRole::Enthalpy => 5e5,

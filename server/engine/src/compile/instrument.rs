@@ -25,8 +25,35 @@ pub(crate) struct Instrument {
     pub(crate) shares: Vec<(u32, Spread)>,
     /// Station pressure (Pa) and temperature (K) that a water leg is reckoned with.
     pub(crate) surroundings: (f64, f64),
+    /// Its own standard uncertainty.
+    pub(crate) uncertainty: Uncertainty,
     /// The tag as the plant file states it.
     pub(crate) tag: Tag,
+}
+
+/// A standard uncertainty of several parts, added up by kind.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(crate) struct Uncertainty {
+    /// Share of the reading.
+    of_reading: f64,
+    /// The part that doesn't depend on it, SI.
+    absolute: f64,
+}
+
+impl Uncertainty {
+    /// Adds up what a tag states.
+    pub(crate) fn of(tag: &Tag) -> Self {
+        tag.sigma.iter().fold(Self { of_reading: 0.0, absolute: 0.0 }, |sum, part| match *part {
+            Spread::OfReading(share) => Self { of_reading: sum.of_reading.hypot(share), ..sum },
+            Spread::OfSpan(share) => Self { absolute: sum.absolute.hypot(share * span_length(tag)), ..sum },
+            Spread::Absolute(amount) => Self { absolute: sum.absolute.hypot(amount), ..sum },
+        })
+    }
+}
+
+/// Length of a tag's span, SI; zero without one.
+fn span_length(tag: &Tag) -> f64 {
+    tag.span.as_ref().map_or(0.0, |span| (span.value[1] - span.value[0]).abs())
 }
 
 /// A reading after known corrections, with its uncertainty, in the SI of the tag's unit.
@@ -87,8 +114,9 @@ impl Instrument {
     }
 
     /// Standard uncertainty of a single reading of this size, SI.
-    pub(crate) fn stated_sigma(&self, value: f64, unit: Unit) -> f64 {
-        self.tag.sigma.iter().map(|part| self.spread(*part, value, unit).powi(2)).sum::<f64>().sqrt()
+    fn stated_sigma(&self, value: f64, unit: Unit) -> f64 {
+        let of_reading = unit.difference_to_si(self.uncertainty.of_reading * unit.from_si(value));
+        (of_reading * of_reading + self.uncertainty.absolute * self.uncertainty.absolute).sqrt()
     }
 
     /// Standard uncertainty of a reading that it shares with other tags, SI.
@@ -102,9 +130,7 @@ impl Instrument {
     pub(crate) fn spread(&self, spread: Spread, value: f64, unit: Unit) -> f64 {
         match spread {
             Spread::OfReading(share) => unit.difference_to_si(share * unit.from_si(value)).abs(),
-            Spread::OfSpan(share) => {
-                self.tag.span.as_ref().map_or(0.0, |span| share * (span.value[1] - span.value[0]).abs())
-            }
+            Spread::OfSpan(share) => share * span_length(&self.tag),
             Spread::Absolute(amount) => amount,
         }
     }

@@ -4,7 +4,7 @@ use std::collections::HashMap;
 
 use meterwright_thermo::Scalar;
 
-use super::instrument::{Instrument, SoftGiven};
+use super::instrument::{Instrument, SoftGiven, Uncertainty};
 use super::quantities::Naming;
 use crate::balance::Label;
 use crate::equation::{Difference, Equation, EquationError, Held, Row, RowRole};
@@ -149,7 +149,7 @@ impl Known {
         let surroundings = (plant.surroundings.pressure, plant.surroundings.temperature);
         let base = variable.filter(|_| quantity.is_some());
         let constant = if variable.is_none() { naming.system().find(&tag.name.value) } else { None };
-        let (shares, tag) = (Vec::new(), tag.clone());
+        let (uncertainty, shares, tag) = (Uncertainty::of(tag), Vec::new(), tag.clone());
         self.instruments.push(Instrument {
             label,
             reads: quantity,
@@ -159,6 +159,7 @@ impl Known {
             shift,
             shares,
             surroundings,
+            uncertainty,
             tag,
         });
         Ok(quantity)

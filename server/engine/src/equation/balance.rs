@@ -2,7 +2,7 @@
 
 use meterwright_thermo::Scalar;
 
-use super::{Equation, EquationError, Held};
+use super::{Equation, EquationError, Held, Shape};
 
 /// Standard acceleration of gravity, m/s2 (ISO 80000-3).
 pub const GRAVITY: f64 = 9.80665;
@@ -32,9 +32,19 @@ impl Equation for Linear {
         Ok(sum)
     }
 
-    fn linear(&self) -> Option<Linear> {
-        Some(self.clone())
+    fn shape(&self) -> Shape {
+        Shape::Linear(self.clone())
     }
+}
+
+/// A sum of products of two and of single variables: `sum of sign * a (b + offset) + sum of coefficient * c = 0`, the local
+/// variables being all `a` and `b` in turn, then all `c`. Energy balances, mostly.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Paired {
+    /// Sign and offset of each product.
+    pub pairs: Vec<[f64; 2]>,
+    /// Coefficient of each single variable.
+    pub coefficients: Vec<f64>,
 }
 
 /// What one stream brings into an energy balance.
@@ -52,15 +62,13 @@ pub struct StreamTerm {
 /// `sum of sign * m (h + w^2/2 + g z) + sum of sign * heat or power = 0`
 /// (for instance ISO 5389 or any textbook of engineering thermodynamics; signs as in the caller's terms).
 ///
-/// Local variables: for each stream m, h and, where kinetic, w; then for each of `flows` its heat or power; then, with
-/// `loss`, the lost mass flow and the specific enthalpy it leaves with.
+/// Local variables: for each stream m, h and, where kinetic, w; then for each of `flows` its heat or power. Lost mass is a
+/// stream like any other.
 pub struct EnergyBalance {
     /// The streams.
     pub streams: Vec<StreamTerm>,
     /// Signs of the heats and powers, + where it enters.
     pub flows: Vec<f64>,
-    /// Whether lost mass takes its enthalpy along.
-    pub loss: bool,
 }
 
 impl Equation for EnergyBalance {
@@ -79,10 +87,16 @@ impl Equation for EnergyBalance {
         for (flow, sign) in x[at..].iter().zip(&self.flows) {
             sum += *flow * *sign;
         }
-        if self.loss {
-            at += self.flows.len();
-            sum -= x[at] * x[at + 1];
-        }
         Ok(sum)
+    }
+
+    fn shape(&self) -> Shape {
+        if self.streams.iter().any(|stream| stream.kinetic) {
+            return Shape::General;
+        }
+        Shape::Paired(Paired {
+            pairs: self.streams.iter().map(|stream| [stream.sign, stream.potential]).collect(),
+            coefficients: self.flows.clone(),
+        })
     }
 }

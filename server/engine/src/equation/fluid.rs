@@ -6,7 +6,7 @@ use meterwright_thermo::liquid::Liquid;
 use meterwright_thermo::water::saturation::{self, AlongSaturation};
 use meterwright_thermo::water::{self, Region};
 
-use super::{Equation, EquationError};
+use super::{Equation, EquationError, Shape};
 use crate::plant::FluidKind;
 
 /// The formula that describes a stream while a solve runs.
@@ -21,11 +21,11 @@ pub enum Form {
 }
 
 /// The forms that are held, by stream.
-#[derive(Clone, Copy, Debug)]
+#[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Held<'a>(pub &'a [Form]);
 
 /// A stream's fluid, as its rows need it.
-#[derive(Clone, Copy, Debug)]
+#[derive(Clone, Copy, Debug, PartialEq)]
 pub struct StreamFluid {
     /// Index of the stream.
     pub stream: usize,
@@ -43,7 +43,10 @@ impl StreamFluid {
     }
 
     /// Zero where (p, T, h) is a state of the fluid in the form that is held.
-    fn property<S: Scalar>(&self, held: Held<'_>, p: S, t: S, h: S) -> Result<S, EquationError> {
+    ///
+    /// # Errors
+    /// [`EquationError`] outside the range of the fluid's formulas.
+    pub fn property<S: Scalar>(&self, held: Held<'_>, p: S, t: S, h: S) -> Result<S, EquationError> {
         if let FluidKind::Liquid { density, specific_heat } = self.fluid {
             let liquid = Liquid::new(density, specific_heat)?;
             return Ok(h - lift(p, t, liquid.properties(p.value(), t.value())?.enthalpy));
@@ -174,6 +177,10 @@ pub struct PropertyRow(pub StreamFluid);
 impl Equation for PropertyRow {
     fn residual<S: Scalar>(&self, x: &[S], held: Held<'_>) -> Result<S, EquationError> {
         self.0.property(held, x[0], x[1], x[2])
+    }
+
+    fn shape(&self) -> Shape {
+        Shape::Property(self.0)
     }
 }
 

@@ -2,7 +2,7 @@
 
 use meterwright_thermo::Scalar;
 
-use super::{Equation, EquationError, Held, Linear};
+use super::{Equation, EquationError, Held, Linear, Shape};
 
 /// `x0 = x1 - x2`.
 pub struct Difference;
@@ -12,8 +12,8 @@ impl Equation for Difference {
         Ok(x[0] - (x[1] - x[2]))
     }
 
-    fn linear(&self) -> Option<Linear> {
-        Some(Linear::new(vec![1.0, -1.0, 1.0]))
+    fn shape(&self) -> Shape {
+        Shape::Linear(Linear::new(vec![1.0, -1.0, 1.0]))
     }
 }
 

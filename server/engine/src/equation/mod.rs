@@ -5,7 +5,7 @@ mod balance;
 mod fluid;
 mod law;
 
-pub use balance::{EnergyBalance, GRAVITY, Linear, StreamTerm};
+pub use balance::{EnergyBalance, GRAVITY, Linear, Paired, StreamTerm};
 pub use fluid::{
     AtSaturation, EntropyOf, Form, Held, Makes, PropertyRow, QualityOf, SaturationOf, StagnationPressure,
     StagnationTemperature, StreamFluid, VolumeOf, saturation_temperature,
@@ -41,10 +41,23 @@ pub trait Equation: Send + Sync {
     /// [`EquationError`] where the equation has no value.
     fn residual<S: Scalar>(&self, x: &[S], held: Held<'_>) -> Result<S, EquationError>;
 
-    /// The same equation as a sum, where it is linear: it is then differentiated once and for all.
-    fn linear(&self) -> Option<Linear> {
-        None
+    /// What it takes to evaluate the equation, where that is less than this trait offers.
+    fn shape(&self) -> Shape {
+        Shape::General
     }
+}
+
+/// The shapes that make up most of a plant's rows. A solve evaluates them from plain arrays.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Shape {
+    /// A sum: differentiated once and for all.
+    Linear(Linear),
+    /// A sum of products of two.
+    Paired(Paired),
+    /// The property row of a stream.
+    Property(StreamFluid),
+    /// Anything else.
+    General,
 }
 
 /// The object-safe face of an [`Equation`].
@@ -121,15 +134,15 @@ pub struct Row {
     name: String,
     role: RowRole,
     variables: Vec<u32>,
-    linear: Option<Linear>,
+    shape: Shape,
     equation: Box<dyn Differentiable>,
 }
 
 impl Row {
     /// A row from its equation and the problem's variables that stand for the equation's local ones.
     pub fn new(name: String, role: RowRole, variables: Vec<u32>, equation: impl Equation + 'static) -> Self {
-        let linear = equation.linear();
-        Self { name, role, variables, linear, equation: Box::new(equation) }
+        let shape = equation.shape();
+        Self { name, role, variables, shape, equation: Box::new(equation) }
     }
 
     /// What it is called in messages, such as `hp_turbine: energy balance`.
@@ -152,9 +165,9 @@ impl Row {
         &self.variables
     }
 
-    /// The row as a sum, where it is linear.
-    pub fn linear(&self) -> Option<&Linear> {
-        self.linear.as_ref()
+    /// What it takes to evaluate the row.
+    pub fn shape(&self) -> &Shape {
+        &self.shape
     }
 
     /// Residual at the local variables `x`.

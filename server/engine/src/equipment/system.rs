@@ -459,12 +459,16 @@ impl System {
                 }
             }
         }
+        let carries_losses = sides.contains(&0);
+        if let Some(enthalpy) = first_outlet.filter(|_| carries_losses && machine.closes_mass) {
+            variables.extend([self.mass_loss(machine), enthalpy]);
+            streams.push(StreamTerm { sign: -1.0, kinetic: false, potential: 0.0 });
+        }
         let mut signs = Vec::new();
         for (flow, sign) in flows {
             variables.push(self.power(machine, flow));
             signs.push(*sign);
         }
-        let carries_losses = sides.contains(&0);
         if carries_losses {
             variables.extend([
                 self.zero_power(machine, "heat_loss"),
@@ -472,12 +476,7 @@ impl System {
             ]);
             signs.extend([-1.0, -1.0]);
         }
-        let loss = carries_losses && machine.closes_mass && first_outlet.is_some();
-        if loss {
-            variables.push(self.mass_loss(machine));
-            variables.extend(first_outlet);
-        }
-        self.law(machine, what, variables, EnergyBalance { streams, flows: signs, loss });
+        self.law(machine, what, variables, EnergyBalance { streams, flows: signs });
     }
 }
 

@@ -171,7 +171,7 @@ fn take_step(
     };
     let now = (infeasibility(here), situation.objective(x));
     let from = x.clone();
-    let (mut share, _) = longest(&problem.variables, &from, step, scaling);
+    let (mut share, _) = longest(&problem.bounded, &from, step, scaling);
     for _ in 0..8 {
         for (j, value) in x.iter_mut().enumerate() {
             *value = from[j] + share * step[j] * scaling.column[j];

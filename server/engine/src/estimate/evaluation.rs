@@ -1,8 +1,10 @@
 //! Residuals and Jacobian of all rows at a point.
 
+use meterwright_thermo::Dual;
+
 use crate::equation::{EquationError, Form, Held, Row, RowRole};
 
-use super::problem::{Problem, Shape};
+use super::problem::{Problem, Recipe};
 
 /// Residuals and derivatives of all rows at one point; reusable.
 #[derive(Clone, Debug, Default)]
@@ -41,20 +43,60 @@ impl Evaluation {
     /// Evaluates the laws alone, after an evaluation of all rows: linear ones keep their derivatives, and definitions,
     /// which determine nothing but their own variable, are left where they are.
     pub(crate) fn laws_at(&mut self, problem: &Problem, x: &[f64], forms: &[Form]) -> Result<(), NoValue> {
-        for (number, shape) in problem.shapes.iter().enumerate() {
-            match shape {
-                Shape::Linear(constant) => {
+        for (number, recipe) in problem.recipes.iter().enumerate() {
+            match recipe {
+                Recipe::Linear(constant) => {
                     let terms = problem.locals(number).iter().zip(problem.coefficients(number));
                     self.residual[number] = terms.fold(*constant, |sum, (v, c)| sum + x[*v as usize] * c);
                 }
-                Shape::Law => {
+                Recipe::Paired(pairs) => self.paired(problem, number, *pairs, x),
+                Recipe::Property(fluid) => {
+                    let [p, t, h] = std::array::from_fn(|at| {
+                        Dual::<3>::variable(x[problem.locals(number)[at] as usize], at)
+                    });
+                    let residual = fluid
+                        .property(Held(forms), p, t, h)
+                        .map_err(|error| NoValue { row: number, error })?;
+                    self.residual[number] = residual.re;
+                    for (place, slope) in problem.places(number).iter().zip(residual.gradient) {
+                        self.jacobian[*place as usize] = slope;
+                    }
+                }
+                Recipe::Law => {
                     self.jacobian[problem.pattern.range(number)].fill(0.0);
                     self.row(problem, number, &problem.rows[number], x, forms)?;
                 }
-                Shape::Definition => self.residual[number] = 0.0,
+                Recipe::Definition => self.residual[number] = 0.0,
             }
         }
         Ok(())
+    }
+
+    /// Evaluates a sum of products of two and of single variables, whose derivatives are each other's partners.
+    fn paired(&mut self, problem: &Problem, number: usize, pairs: usize, x: &[f64]) {
+        let locals = problem.locals(number);
+        let places = problem.places(number);
+        let coefficients = problem.coefficients(number);
+        let (paired, single) = locals.split_at(2 * pairs);
+        let (mine, others) = places.split_at(2 * pairs);
+        let (factors, slopes) = coefficients.split_at(2 * pairs);
+        let mut sum = 0.0;
+        for place in places {
+            self.jacobian[*place as usize] = 0.0;
+        }
+        let (paired, mine, factors) =
+            (paired.as_chunks::<2>().0, mine.as_chunks::<2>().0, factors.as_chunks::<2>().0);
+        for (([a, b], places), [sign, offset]) in paired.iter().zip(mine).zip(factors) {
+            let (a, b) = (sign * x[*a as usize], x[*b as usize] + offset);
+            sum += a * b;
+            self.jacobian[places[0] as usize] += sign * b;
+            self.jacobian[places[1] as usize] += a;
+        }
+        for ((variable, place), slope) in single.iter().zip(others).zip(slopes) {
+            sum += x[*variable as usize] * slope;
+            self.jacobian[*place as usize] += slope;
+        }
+        self.residual[number] = sum;
     }
 
     /// Gives every definition's variable the value that its row says, after an evaluation of the laws. Definitions are

@@ -4,7 +4,7 @@ use std::sync::Arc;
 
 use meterwright_thermo::{Dual, Scalar};
 
-use crate::kkt::{Diagonal, Factor, FactorError, SelectedInverse, Vectors};
+use crate::kkt::{Diagonal, Factor, FactorError, Vectors};
 
 use super::cache::Structure;
 use super::problem::Situation;
@@ -78,8 +78,7 @@ impl Linearisation {
     /// # Errors
     /// [`FactorError`] if there is no factor.
     pub fn variances(&self) -> Result<Variances, FactorError> {
-        let mut inverse = SelectedInverse::new(Arc::clone(&self.structure.analysis));
-        self.factor.selected_inverse(&mut inverse)?;
+        let inverse = self.factor.selected_inverse()?;
         let scale = &self.structure.scaling.column;
         let mut total = Vec::with_capacity(scale.len());
         let mut repeat = Vec::with_capacity(scale.len());

@@ -97,26 +97,33 @@ fn phase_of(state: &State<'_>, form: Form) -> PhaseHint {
 
 /// The phase a state belongs to, with hysteresis about the one it holds.
 fn wanted_phase(state: &State<'_>, phase: PhaseHint) -> PhaseHint {
-    let (Ok((saturation, _)), Ok(liquid), Ok(vapour)) = (
-        saturation::temperature(state.pressure),
-        saturation::liquid(state.pressure),
-        saturation::vapour(state.pressure),
-    ) else {
-        return if state.temperature > water::CRITICAL_TEMPERATURE {
-            PhaseHint::Vapour
-        } else {
-            PhaseHint::Liquid
+    let single =
+        if state.temperature > water::CRITICAL_TEMPERATURE { PhaseHint::Vapour } else { PhaseHint::Liquid };
+    if phase == PhaseHint::Mixture {
+        return match quality(state) {
+            None => single,
+            Some(quality) if quality < -QUALITY_MARGIN => PhaseHint::Liquid,
+            Some(quality) if quality > 1.0 + QUALITY_MARGIN => PhaseHint::Vapour,
+            Some(_) => phase,
         };
-    };
-    let latent = vapour.enthalpy.value - liquid.enthalpy.value;
-    let quality = (state.enthalpy - liquid.enthalpy.value) / latent;
-    match phase {
-        PhaseHint::Liquid if state.temperature > saturation + CONTINUED => PhaseHint::Mixture,
-        PhaseHint::Vapour if state.temperature < saturation - CONTINUED => PhaseHint::Mixture,
-        PhaseHint::Mixture if quality < -QUALITY_MARGIN => PhaseHint::Liquid,
-        PhaseHint::Mixture if quality > 1.0 + QUALITY_MARGIN => PhaseHint::Vapour,
-        same => same,
     }
+    match (saturation::temperature(state.pressure), phase) {
+        (Err(_), _) => single,
+        (Ok((saturation, _)), PhaseHint::Liquid) if state.temperature > saturation + CONTINUED => {
+            PhaseHint::Mixture
+        }
+        (Ok((saturation, _)), PhaseHint::Vapour) if state.temperature < saturation - CONTINUED => {
+            PhaseHint::Mixture
+        }
+        _ => phase,
+    }
+}
+
+/// The quality of a mixture, from its enthalpy; it may lie outside 0 to 1. Nothing above the critical pressure.
+fn quality(state: &State<'_>) -> Option<f64> {
+    let liquid = saturation::liquid(state.pressure).ok()?.enthalpy.value;
+    let vapour = saturation::vapour(state.pressure).ok()?.enthalpy.value;
+    Some((state.enthalpy - liquid) / (vapour - liquid))
 }
 
 /// What a user should know of the phases of a solution: single phases past saturation, qualities outside 0 to 1.
@@ -136,9 +143,7 @@ fn remark(state: &State<'_>, form: Form) -> Option<String> {
             Some(format!("`{name}` is taken as vapour, {:.1} K below its saturation temperature", -past))
         }
         PhaseHint::Mixture => {
-            let liquid = saturation::liquid(state.pressure).ok()?.enthalpy.value;
-            let vapour = saturation::vapour(state.pressure).ok()?.enthalpy.value;
-            let quality = (state.enthalpy - liquid) / (vapour - liquid);
+            let quality = quality(state)?;
             let outside = !(-QUALITY_REMARK..=1.0 + QUALITY_REMARK).contains(&quality);
             outside.then(|| {
                 format!(

@@ -3,17 +3,22 @@
 //! Minimise `1/2 sum ((y - x)/sigma)^2` over the observations subject to `c(x) = 0` and bounds. Every observation and
 //! every reported quantity is ONE variable, so that the weights are diagonal and the pattern is that of the rows.
 
-use crate::equation::{Row, RowRole};
-use crate::equipment::{Knowledge, StreamData, System, VariableData};
+use crate::equation::{Row, RowRole, Shape, StreamFluid};
+use crate::equipment::{Knowledge, StreamData, System, VariableData, VariableRole};
 use crate::kkt::{Pattern, PatternError};
 
+use super::bounds::Bounded;
 use super::cache::Cache;
 
-/// What it takes to evaluate a row.
+/// What it takes to evaluate a row, beside its local variables and their coefficients.
 #[derive(Clone, Copy, Debug, PartialEq)]
-pub(crate) enum Shape {
+pub(crate) enum Recipe {
     /// A sum with this constant.
     Linear(f64),
+    /// So many products of two, each with its sign and offset for coefficients; then single variables.
+    Paired(usize),
+    /// A stream's property row.
+    Property(StreamFluid),
     /// A law with derivatives of its own.
     Law,
     /// A definition.
@@ -27,6 +32,10 @@ pub struct Problem {
     pub(crate) rows: Vec<Row>,
     pub(crate) streams: Vec<StreamData>,
     pub(crate) pattern: Pattern,
+    /// The role of each variable.
+    pub(crate) roles: Vec<VariableRole>,
+    /// The variables that steps must mind.
+    pub(crate) bounded: Vec<Bounded>,
     /// Whether each variable is only defined by a row, so that nothing else depends on it.
     pub(crate) only_defined: Vec<bool>,
     /// Where the entries of the rows' local variables stand in the pattern, whose rows are sorted by column.
@@ -35,7 +44,7 @@ pub struct Problem {
     place_start: Vec<u32>,
     /// The rows once more in three plain arrays, so that evaluating thousands of them doesn't hunt through memory: what
     /// kind each is, and beside `places` its local variables and, where it is linear, its coefficients.
-    pub(crate) shapes: Vec<Shape>,
+    pub(crate) recipes: Vec<Recipe>,
     locals: Vec<u32>,
     coefficients: Vec<f64>,
     pub(crate) cache: Cache,
@@ -69,9 +78,11 @@ impl Problem {
             system.variables.iter().map(|variable| variable.defined_by.is_some_and(defining)).collect();
         let locals = system.rows.iter().flat_map(|row| row.variables().iter().copied()).collect();
         let coefficients = system.rows.iter().flat_map(coefficients).collect();
-        let shapes = system.rows.iter().map(shape).collect();
+        let recipes = system.rows.iter().map(recipe).collect();
         let pattern = Pattern::new(system.variables.len(), row_start, columns)?;
         Ok(Self {
+            roles: system.variables.iter().map(|variable| variable.role).collect(),
+            bounded: Bounded::among(&system.variables),
             variables: system.variables,
             rows: system.rows,
             streams: system.streams,
@@ -79,7 +90,7 @@ impl Problem {
             only_defined,
             places,
             place_start,
-            shapes,
+            recipes,
             locals,
             coefficients,
             cache: Cache::default(),
@@ -96,7 +107,7 @@ impl Problem {
         &self.locals[self.local_range(row)]
     }
 
-    /// A linear row's coefficients of its local variables.
+    /// The coefficients of a row's local variables, as its recipe reads them.
     pub(crate) fn coefficients(&self, row: usize) -> &[f64] {
         &self.coefficients[self.local_range(row)]
     }
@@ -130,16 +141,22 @@ impl Problem {
     }
 }
 
-fn shape(row: &Row) -> Shape {
-    match (row.role(), row.linear()) {
-        (RowRole::Definition, _) => Shape::Definition,
-        (RowRole::Law, Some(linear)) => Shape::Linear(linear.constant),
-        (RowRole::Law, None) => Shape::Law,
+fn recipe(row: &Row) -> Recipe {
+    match (row.role(), row.shape()) {
+        (RowRole::Definition, _) => Recipe::Definition,
+        (RowRole::Law, Shape::Linear(linear)) => Recipe::Linear(linear.constant),
+        (RowRole::Law, Shape::Paired(paired)) => Recipe::Paired(paired.pairs.len()),
+        (RowRole::Law, Shape::Property(fluid)) => Recipe::Property(*fluid),
+        (RowRole::Law, Shape::General) => Recipe::Law,
     }
 }
 
 fn coefficients(row: &Row) -> Vec<f64> {
-    row.linear().map_or_else(|| vec![0.0; row.variables().len()], |linear| linear.coefficients.clone())
+    match row.shape() {
+        Shape::Linear(linear) => linear.coefficients.clone(),
+        Shape::Paired(paired) => [paired.pairs.as_flattened(), &paired.coefficients].concat(),
+        Shape::Property(_) | Shape::General => vec![0.0; row.variables().len()],
+    }
 }
 
 /// One observed value of a variable.

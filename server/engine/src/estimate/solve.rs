@@ -5,7 +5,7 @@ use std::sync::Arc;
 use crate::equation::Form;
 use crate::kkt::{Analysis, Column, Diagonal, Factor, Vectors};
 
-use super::bounds::{ActiveSet, Side, blocked, longest};
+use super::bounds::{ActiveSet, Bounded, Side, blocked, longest};
 use super::cache::{Key, Structure};
 use super::evaluation::{Evaluation, NoValue};
 use super::failure::{Failure, explain};
@@ -117,11 +117,11 @@ struct Search<'a> {
 }
 
 /// Why one structure didn't lead to a solution.
-enum Trouble {
+enum Trouble<'a> {
     /// The pivots or ranks found at the anchor don't suit the point reached.
     Structure,
     /// A pressure or temperature ran into its limit.
-    Blocked(u32, Side),
+    Blocked(&'a Bounded, Side),
     /// A pressure, temperature or enthalpy that the equations hardly see runs away.
     Runaway(u32),
     /// It can't go on.
@@ -170,8 +170,8 @@ impl<'a> Search<'a> {
                 Ok(()) => {
                     let gradient: Vec<f64> = self.pull(&structure.scaling).iter().map(|pull| -pull).collect();
                     let undetermined = undetermined(&structure.analysis, self.x.len());
-                    let variables = &self.problem.variables;
-                    if self.active.update(variables, &mut self.x, &gradient, &undetermined, round) {
+                    if self.active.update(&self.problem.bounded, &mut self.x, &gradient, &undetermined, round)
+                    {
                         continue;
                     }
                     if self.structure_holds(&structure)
@@ -184,9 +184,7 @@ impl<'a> Search<'a> {
                     }
                     local = true;
                 }
-                Err(Trouble::Blocked(variable, side)) => {
-                    self.active.block(&self.problem.variables, &mut self.x, variable, side);
-                }
+                Err(Trouble::Blocked(bounds, side)) => self.active.block(bounds, &mut self.x, side),
                 Err(Trouble::Runaway(variable)) => {
                     self.x.clone_from(&self.start);
                     self.held.push(variable);
@@ -268,7 +266,7 @@ impl<'a> Search<'a> {
     /// Steps until they vanish. Each solves the conditions of the least sum of squares, linearised, for increments of
     /// the variables and of the multipliers, so that a factor made a step earlier, or at the anchor, slows the steps
     /// down a little and moves the answer not at all.
-    fn converge(&mut self, structure: &Structure) -> Result<(), Trouble> {
+    fn converge(&mut self, structure: &Structure) -> Result<(), Trouble<'a>> {
         let scaling = &structure.scaling;
         let mut factor = structure.factor.clone();
         let mut fresh = false;
@@ -276,6 +274,7 @@ impl<'a> Search<'a> {
         let mut right = Vectors::zeros(&structure.analysis);
         let mut step = Vectors::zeros(&structure.analysis);
         let weights: Vec<f64> = self.weight.iter().zip(&scaling.column).map(|(w, s)| w * s * s).collect();
+        let units = self.units(scaling);
         let mut damping = Damping::default();
         let mut filter = Filter::default();
         let mut previous = f64::NAN;
@@ -302,19 +301,18 @@ impl<'a> Search<'a> {
             if !step.columns.iter().all(|value| value.is_finite()) {
                 return Err(Trouble::Structure);
             }
-            let (size, relative) = self.step_size(scaling, &step.columns);
-            if let Some((variable, side)) = blocked(&self.problem.variables, &self.x, &step, scaling) {
-                return Err(Trouble::Blocked(variable, side));
+            let (size, relative) = self.step_size(scaling, &step.columns, &units);
+            if let Some((bounds, side)) = blocked(&self.problem.bounded, &self.x, &step.columns, scaling) {
+                return Err(Trouble::Blocked(bounds, side));
             }
-            if !self.advance(scaling, &step, size, &mut filter) {
+            let Some((share, capped)) = self.advance(scaling, &step, size, &mut filter) else {
                 if fresh && !damping.raise() {
                     return Err(Trouble::Stuck);
                 }
                 renew = true;
                 continue;
-            }
-            if let (share, Some(variable)) = longest(&self.problem.variables, &self.x, &step.columns, scaling)
-            {
+            };
+            if let Some(variable) = capped {
                 running = if running.0 == Some(variable) {
                     (Some(variable), running.1 + 1)
                 } else {
@@ -327,7 +325,7 @@ impl<'a> Search<'a> {
             scaling.jacobian(&self.here, &mut self.values);
             let rate = if previous.is_finite() { (size / previous).min(1.0) } else { 1.0 };
             if damping.is_zero() && relative * rate < STEP_TOLERANCE {
-                return self.close(scaling, &mut factor);
+                return self.close(scaling, &mut factor, &mut right, &mut step);
             }
             renew = size > STALE_STEP || rate > STALE_RATE && previous.is_finite() || damping.lower();
             fresh = false;
@@ -337,7 +335,7 @@ impl<'a> Search<'a> {
     }
 
     /// The evaluation at the start: the structure's own where it was made at the same point.
-    fn start(&mut self, structure: &Structure) -> Result<(), Trouble> {
+    fn start(&mut self, structure: &Structure) -> Result<(), Trouble<'a>> {
         if structure.point == self.x {
             self.here.clone_from(&structure.evaluation);
             return Ok(());
@@ -361,25 +359,42 @@ impl<'a> Search<'a> {
         pull
     }
 
-    /// Largest component of a step, in sigmas where observed and in thousandths of the scale elsewhere; and relative to
-    /// the larger of value and that unit. What is only defined follows at the end and doesn't count.
-    fn step_size(&self, scaling: &Scaling, step: &[f64]) -> (f64, f64) {
+    /// What a step is measured in: sigmas where observed and thousandths of the scale elsewhere. What is only defined
+    /// follows at the end and doesn't count.
+    fn units(&self, scaling: &Scaling) -> Vec<f64> {
+        let unit =
+            |((only_defined, weight), scale): ((&bool, &f64), &f64)| match (only_defined, *weight > 0.0) {
+                (true, _) => f64::INFINITY,
+                (false, true) => weight.sqrt().recip(),
+                (false, false) => 1e-3 * scale,
+            };
+        self.problem.only_defined.iter().zip(&self.weight).zip(&scaling.column).map(unit).collect()
+    }
+
+    /// Largest component of a step in its unit; and relative to the larger of value and unit.
+    fn step_size(&self, scaling: &Scaling, step: &[f64], units: &[f64]) -> (f64, f64) {
         let (mut size, mut relative) = (0.0_f64, 0.0_f64);
-        for (j, change) in step.iter().enumerate().filter(|(j, _)| !self.problem.only_defined[*j]) {
-            let moved = change.abs() * scaling.column[j];
-            let unit =
-                if self.weight[j] > 0.0 { self.weight[j].sqrt().recip() } else { 1e-3 * scaling.column[j] };
+        for (((change, scale), unit), x) in step.iter().zip(&scaling.column).zip(units).zip(&self.x) {
+            let moved = change.abs() * scale;
             size = size.max(moved / unit);
-            relative = relative.max(moved / unit.max(self.x[j].abs()));
+            relative = relative.max(moved / unit.max(x.abs()));
         }
         (size, relative)
     }
 
-    /// Moves along a step as far as the filter lets it.
-    fn advance(&mut self, scaling: &Scaling, step: &Vectors<f64>, size: f64, filter: &mut Filter) -> bool {
+    /// Moves along a step as far as the filter lets it; tells the longest share that caps allowed and the variable that
+    /// set it, or nothing where it didn't move.
+    fn advance(
+        &mut self,
+        scaling: &Scaling,
+        step: &Vectors<f64>,
+        size: f64,
+        filter: &mut Filter,
+    ) -> Option<(f64, Option<u32>)> {
         let now = (self.infeasibility(scaling), self.situation.objective(&self.x));
         let from = self.x.clone();
-        let (mut share, _) = longest(&self.problem.variables, &from, &step.columns, scaling);
+        let allowed = longest(&self.problem.bounded, &from, &step.columns, scaling);
+        let mut share = allowed.0;
         for _ in 0..9 {
             for (j, value) in self.x.iter_mut().enumerate() {
                 *value = from[j] + share * step.columns[j] * scaling.column[j];
@@ -391,7 +406,7 @@ impl<'a> Search<'a> {
                     for (multiplier, change) in self.multipliers.iter_mut().zip(&step.rows) {
                         *multiplier += share * change;
                     }
-                    return true;
+                    return Some(allowed);
                 }
             }
             share *= 0.5;
@@ -399,7 +414,7 @@ impl<'a> Search<'a> {
         self.x = from;
         // This point was accepted before, so that it has a value; the evaluation must be its own again.
         let _ = self.here.laws_at(self.problem, &self.x, &self.forms);
-        false
+        None
     }
 
     fn infeasibility(&self, scaling: &Scaling) -> f64 {
@@ -407,9 +422,14 @@ impl<'a> Search<'a> {
     }
 
     /// Steps onto the equations alone, then gives definitions their values.
-    fn close(&mut self, scaling: &Scaling, factor: &mut Factor<f64>) -> Result<(), Trouble> {
-        let mut right = Vectors::zeros(factor.analysis());
-        let mut step = Vectors::zeros(factor.analysis());
+    fn close(
+        &mut self,
+        scaling: &Scaling,
+        factor: &mut Factor<f64>,
+        right: &mut Vectors<f64>,
+        step: &mut Vectors<f64>,
+    ) -> Result<(), Trouble<'a>> {
+        right.columns.fill(0.0);
         for _ in 0..3 {
             if self.here.worst(self.problem, &self.x).0 < CLOSED_WELL {
                 break;
@@ -419,7 +439,7 @@ impl<'a> Search<'a> {
             {
                 *slot = -residual * scale;
             }
-            factor.solve(&right, &mut step).map_err(|_| Trouble::Structure)?;
+            factor.solve(right, step).map_err(|_| Trouble::Structure)?;
             for (value, (change, scale)) in self.x.iter_mut().zip(step.columns.iter().zip(&scaling.column)) {
                 *value += change * scale;
             }

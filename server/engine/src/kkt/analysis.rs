@@ -4,6 +4,7 @@ use thiserror::Error;
 
 use super::ordering::{Entry, Graph, Pivot, Role};
 use super::pattern::{Column, Pattern};
+use super::postorder::postordered;
 use super::rank::{NullVector, Rank};
 use super::scaling::Scaling;
 use super::tape::{Kind, Tape};
@@ -107,6 +108,7 @@ impl Analysis {
         let rank = Rank::new(pattern, values, columns, &scaling);
         let nodes = Nodes::new(columns, pattern.rows(), &rank, softened);
         let pivots = nodes.graph(pattern, values, columns, &scaling, &rank).eliminate_all();
+        let pivots = postordered(pivots, nodes.count);
         let mut position = vec![ABSENT; nodes.count];
         let order = pivots.iter().flat_map(|pivot| std::iter::once(pivot.first).chain(pivot.second));
         for (place, node) in (0u32..).zip(order) {

@@ -71,7 +71,7 @@ impl<'a, S> Diagonal<'a, S> {
     }
 }
 
-/// A factor and the workspace for making it and solving with it. Nothing is allocated after it was built.
+/// A factor and the workspace for making it and solving with it, allocated when first needed and then kept.
 #[derive(Clone, Debug)]
 pub struct Factor<S> {
     pub(super) analysis: Arc<Analysis>,
@@ -88,18 +88,16 @@ pub struct Factor<S> {
 }
 
 impl<S: Scalar> Factor<S> {
-    /// The workspace for an analysis.
+    /// A factor that follows an analysis, to be made by [`Factor::refactor`].
     pub fn new(analysis: Arc<Analysis>) -> Self {
-        let zero = S::constant(0.0);
-        let count = analysis.diagonal.len();
         Self {
-            storage: vec![zero; analysis.tape.stored],
+            storage: Vec::new(),
             ready: false,
-            diagonal: vec![zero; count],
-            coefficients: vec![0.0; analysis.entries.len()],
-            work: vec![zero; count],
-            correction: vec![zero; count],
-            bound: vec![[0.0; 2]; count],
+            diagonal: Vec::new(),
+            coefficients: Vec::new(),
+            work: Vec::new(),
+            correction: Vec::new(),
+            bound: Vec::new(),
             analysis,
         }
     }
@@ -138,11 +136,13 @@ impl<S: Scalar> Factor<S> {
         if !diagonal.softening.is_empty() {
             check_length("softening", diagonal.softening.len(), analysis.rows)?;
         }
-        self.storage.fill(S::constant(0.0));
-        for (place, kept) in analysis.entries.iter().zip(&mut self.coefficients) {
-            let value = values[place.source as usize];
-            *kept = value;
-            self.storage[place.storage as usize] = S::constant(value);
+        self.storage.clear();
+        self.storage.resize(analysis.tape.stored, S::constant(0.0));
+        self.diagonal.resize(analysis.diagonal.len(), S::constant(0.0));
+        self.coefficients.clear();
+        self.coefficients.extend(analysis.entries.iter().map(|place| values[place.source as usize]));
+        for (place, value) in analysis.entries.iter().zip(&self.coefficients) {
+            self.storage[place.storage as usize] = S::constant(*value);
         }
         for (&position, weight) in analysis.column_position.iter().zip(diagonal.weights) {
             if position != ABSENT {

@@ -17,7 +17,7 @@ use super::analysis::{ABSENT, Analysis};
 use super::factor::{Factor, FactorError};
 use super::tape::Kind;
 
-/// The entries of the inverse that lie on the pattern of the factor, and the workspace for them.
+/// The entries of the inverse that lie on the pattern of the factor.
 #[derive(Clone, Debug)]
 pub struct SelectedInverse<S> {
     analysis: Arc<Analysis>,
@@ -25,11 +25,6 @@ pub struct SelectedInverse<S> {
 }
 
 impl<S: Scalar> SelectedInverse<S> {
-    /// The workspace for an analysis; all entries are zero until [`Factor::selected_inverse`] fills them.
-    pub fn new(analysis: Arc<Analysis>) -> Self {
-        Self { storage: vec![S::constant(0.0); analysis.tape.stored], analysis }
-    }
-
     /// The variance of the estimate of a column; zero for fixed and held columns and for those that don't exist.
     pub fn variance(&self, column: usize) -> S {
         let position = self.analysis.column_position.get(column).copied().unwrap_or(ABSENT);
@@ -51,22 +46,20 @@ impl<S: Scalar> SelectedInverse<S> {
 }
 
 impl<S: Scalar> Factor<S> {
-    /// Fills in the inverse on the pattern of the factor.
+    /// The inverse on the pattern of the factor.
     ///
     /// # Errors
     /// [`FactorError::Unfactored`] without a factor.
-    pub fn selected_inverse(&self, inverse: &mut SelectedInverse<S>) -> Result<(), FactorError> {
+    pub fn selected_inverse(&self) -> Result<SelectedInverse<S>, FactorError> {
         self.check_ready()?;
-        if !Arc::ptr_eq(&self.analysis, &inverse.analysis) {
-            *inverse = SelectedInverse::new(Arc::clone(&self.analysis));
-        }
+        let mut storage = vec![S::constant(0.0); self.analysis.tape.stored];
         let tape = &self.analysis.tape;
         let mut factor = &self.storage[..];
         let mut tape_rest = &tape.destination[..];
         for step in tape.steps.iter().rev() {
             let (rest, block) = factor.split_at(factor.len() - step.stored());
             let (tape_before, places) = tape_rest.split_at(tape_rest.len() - step.updates());
-            let (_, own) = inverse.storage.split_at_mut(step.storage as usize);
+            let (_, own) = storage.split_at_mut(step.storage as usize);
             let (own, tail) = own.split_at_mut(step.stored());
             match step.kind {
                 Kind::Variable | Kind::Equation => invert_single(block, own, tail, places),
@@ -75,17 +68,16 @@ impl<S: Scalar> Factor<S> {
             factor = rest;
             tape_rest = tape_before;
         }
-        Ok(())
+        Ok(SelectedInverse { analysis: Arc::clone(&self.analysis), storage })
     }
 }
 
-/// One pivot of width one.
+/// One pivot of width one; `own` is zero before.
 #[inline]
 fn invert_single<S: Scalar>(block: &[S], own: &mut [S], tail: &[S], places: &[u32]) {
     let (Some((pivot, factor)), Some((head, panel))) = (block.split_first(), own.split_first_mut()) else {
         return;
     };
-    panel.fill(S::constant(0.0));
     let mut remaining = &mut *panel;
     let mut factor_rest = factor;
     let mut places = places;
@@ -112,7 +104,7 @@ fn invert_single<S: Scalar>(block: &[S], own: &mut [S], tail: &[S], places: &[u3
     *head = diagonal;
 }
 
-/// One pair.
+/// One pair; `own` is zero before.
 #[inline]
 fn invert_pair<S: Scalar>(block: &[S], own: &mut [S], tail: &[S], places: &[u32]) {
     let (Some((pivot, factor)), Some((head, panel))) =
@@ -120,7 +112,6 @@ fn invert_pair<S: Scalar>(block: &[S], own: &mut [S], tail: &[S], places: &[u32]
     else {
         return;
     };
-    panel.fill(S::constant(0.0));
     let (factor, _) = factor.as_chunks::<2>();
     let (panel, _) = panel.as_chunks_mut::<2>();
     let mut remaining = &mut *panel;

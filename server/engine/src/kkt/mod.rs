@@ -15,6 +15,7 @@ mod factor;
 mod inverse;
 mod ordering;
 mod pattern;
+mod postorder;
 mod rank;
 mod scaling;
 mod solve;

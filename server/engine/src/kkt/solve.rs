@@ -75,9 +75,8 @@ impl<S: Scalar> Factor<S> {
         gather(&self.analysis, rhs, &mut self.work);
         gather(&self.analysis, solution, &mut self.correction);
         let (residual, x, bound) = (&mut self.work, &self.correction, &mut self.bound);
-        for (bound, side) in bound.iter_mut().zip(&*residual) {
-            *bound = [side.value().abs(), 0.0];
-        }
+        bound.clear();
+        bound.extend(residual.iter().map(|side| [side.value().abs(), 0.0]));
         let mut weigh = |at: usize, factor: f64, x: f64| {
             bound[at][0] += (factor * x).abs();
             bound[at][1] += factor.abs();
@@ -95,7 +94,7 @@ impl<S: Scalar> Factor<S> {
         }
         let largest_x = x.iter().fold(0.0_f64, |most, x| most.max(x.value().abs()));
         let mut worst = Residual { largest: 0.0, backward_error: 0.0 };
-        for (residual, &mut [terms, norm]) in residual.iter().zip(bound) {
+        for (residual, &[terms, norm]) in residual.iter().zip(&*bound) {
             let size = residual.value().abs();
             let rounding = 1e3 * f64::EPSILON * norm * largest_x;
             let denominator = if terms > rounding { terms } else { terms + norm * largest_x };
@@ -174,7 +173,8 @@ fn check_vectors<S>(analysis: &Analysis, vectors: &Vectors<S>) -> Result<(), Fac
 }
 
 /// Brings what takes part into the order of elimination.
-fn gather<S: Scalar>(analysis: &Analysis, from: &Vectors<S>, to: &mut [S]) {
+fn gather<S: Scalar>(analysis: &Analysis, from: &Vectors<S>, to: &mut Vec<S>) {
+    to.resize(analysis.diagonal.len(), S::constant(0.0));
     for (positions, values) in
         [(&analysis.column_position, &from.columns), (&analysis.row_position, &from.rows)]
     {

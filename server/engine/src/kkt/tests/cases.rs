@@ -5,8 +5,7 @@ use std::sync::Arc;
 use super::oracle::Problem;
 use super::plant::Plant;
 use crate::kkt::{
-    Analysis, AnalysisError, Column, Diagonal, Factor, FactorError, Pattern, PatternError, SelectedInverse,
-    Vectors,
+    Analysis, AnalysisError, Column, Diagonal, Factor, FactorError, Pattern, PatternError, Vectors,
 };
 
 fn problem(rows: &[&[(u32, f64)]], weights: &[Option<f64>]) -> Problem {
@@ -18,8 +17,7 @@ fn variances(problem: &Problem) -> Vec<f64> {
     let weights = problem.weights();
     let mut factor = Factor::new(Arc::clone(&analysis));
     factor.refactor(&problem.values, &Diagonal::new(&weights)).unwrap();
-    let mut inverse = SelectedInverse::new(analysis);
-    factor.selected_inverse(&mut inverse).unwrap();
+    let inverse = factor.selected_inverse().unwrap();
     (0..weights.len()).map(|column| inverse.variance(column)).collect()
 }
 

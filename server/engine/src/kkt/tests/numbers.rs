@@ -18,9 +18,7 @@ fn factored(problem: &Problem, analysis: &Arc<Analysis>, diagonal: &Diagonal<'_,
 }
 
 fn inverted(factor: &Factor<f64>) -> SelectedInverse<f64> {
-    let mut inverse = SelectedInverse::new(Arc::clone(factor.analysis()));
-    factor.selected_inverse(&mut inverse).unwrap();
-    inverse
+    factor.selected_inverse().unwrap()
 }
 
 /// Variances relative to themselves, with a floor for those that are far below the ones that they are made of and
@@ -179,8 +177,7 @@ fn dual_weights_give_the_derivative_of_the_variances() {
             weights.iter().zip(&parts).map(|(re, part)| Dual { re: *re, gradient: [*part] }).collect();
         let mut factor = Factor::new(Arc::clone(&analysis));
         factor.refactor(&problem.values, &Diagonal::new(&dual)).unwrap();
-        let mut inverse = SelectedInverse::new(Arc::clone(&analysis));
-        factor.selected_inverse(&mut inverse).unwrap();
+        let inverse = factor.selected_inverse().unwrap();
         let exact = problem.kkt_inverse(&analysis, &weights, &[], &[], false);
         let expected = |column: usize| -> f64 {
             parts.iter().enumerate().map(|(at, part)| exact[(column, at)].powi(2) * part).sum()

@@ -5,7 +5,7 @@ use std::sync::Arc;
 use super::oracle::Problem;
 use super::plant::{Plant, Random};
 use super::{JOINED, SMALL, UNIT};
-use crate::kkt::{Analysis, Column, Diagonal, Factor, SelectedInverse};
+use crate::kkt::{Analysis, Column, Diagonal, Factor};
 
 /// Compares everything that the analysis says about ranks with the dense answer.
 fn check_ranks(problem: &Problem, analysis: &Analysis) {
@@ -30,8 +30,7 @@ fn redundancy_sum(problem: &Problem, analysis: &Arc<Analysis>) -> f64 {
     let weights = problem.weights();
     let mut factor = Factor::new(Arc::clone(analysis));
     factor.refactor(&problem.values, &Diagonal::new(&weights)).unwrap();
-    let mut inverse = SelectedInverse::new(Arc::clone(analysis));
-    factor.selected_inverse(&mut inverse).unwrap();
+    let inverse = factor.selected_inverse().unwrap();
     let weighted = weights.iter().enumerate().filter(|(_, weight)| **weight > 0.0);
     weighted.map(|(column, weight)| 1.0 - weight * inverse.variance(column)).sum()
 }

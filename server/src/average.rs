@@ -1,4 +1,4 @@
-//! The mean of a tag's samples over a period, and how well they know it.
+//! The mean and the trend of a tag's samples over a period, and how well they know them.
 
 use meterwright_engine::Reading;
 
@@ -7,8 +7,19 @@ use meterwright_engine::Reading;
 pub(crate) struct WeightedSample {
     /// In the tag's unit.
     pub(crate) value: f64,
-    /// Time over which it held, in any unit; not negative.
+    /// Time over which it held, s; not negative.
     pub(crate) weight: f64,
+    /// Middle of that time, s from any instant.
+    pub(crate) time: f64,
+}
+
+/// How a tag's value moved over a period.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Trend {
+    /// In the tag's unit (a difference) per second.
+    pub slope: f64,
+    /// Standard error of the slope.
+    pub standard_error: f64,
 }
 
 /// Time-weighted mean with its standard error; none without samples. Where no sample has a weight all count alike.
@@ -21,27 +32,63 @@ pub(crate) struct WeightedSample {
 /// textbook's `s / sqrt(n)`. A negative `r` counts as zero, and `n_eff` is at least two: the samples of a drift
 /// know the mean no better than two of them would.
 pub(crate) fn mean(samples: &[WeightedSample]) -> Option<Reading> {
-    let total: f64 = samples.iter().map(|sample| sample.weight).sum();
-    let share = |sample: &WeightedSample| {
-        if total > 0.0 { sample.weight / total } else { 1.0 / samples.len() as f64 }
-    };
-    // Weighed about the first sample, so that a large constant part of the values costs no digits.
-    let first = samples.first()?.value;
-    let mean = first + samples.iter().map(|sample| share(sample) * (sample.value - first)).sum::<f64>();
+    let mean = weighted_mean(samples, |sample| sample.value)?;
     let standard_error = (samples.len() > 1).then(|| {
-        let spread: f64 = samples.iter().map(|sample| share(sample) * (sample.value - mean).powi(2)).sum();
-        let squares: f64 = samples.iter().map(|sample| share(sample).powi(2)).sum();
-        let correlation = autocorrelation(samples, mean).max(0.0);
-        let effective = ((1.0 - correlation) / (1.0 + correlation) / squares).max(2.0);
-        (spread / (effective - 1.0)).sqrt()
+        let deviation = |sample: &WeightedSample| sample.value - mean;
+        let spread = weighted_sum(samples, |sample| deviation(sample).powi(2));
+        (spread / (effective_number(samples, deviation).max(2.0) - 1.0)).sqrt()
     });
     Some(Reading { mean, standard_error, samples: samples.len() as u32 })
 }
 
-/// Lag-1 autocorrelation about `mean`; zero for constant samples.
-fn autocorrelation(samples: &[WeightedSample], mean: f64) -> f64 {
-    let products: f64 = samples.windows(2).map(|pair| (pair[0].value - mean) * (pair[1].value - mean)).sum();
-    let squares: f64 = samples.iter().map(|sample| (sample.value - mean).powi(2)).sum();
+/// Slope of the value over time with its standard error; none with fewer than three samples at different times.
+///
+/// Least squares with the weights of [`mean`], which for evenly spaced samples are ordinary least squares:
+/// `b = sum w (t - tm)(x - m) / sum w (t - tm)^2`. With the residuals `e` of that line the standard error is
+/// `sqrt(sum w e^2 / sum w (t - tm)^2 / (n_eff - 2))`, where the effective number of samples is that of [`mean`] with the
+/// lag-1 autocorrelation of the residuals, and at least three. For independent samples of equal weight it is the textbook's.
+pub(crate) fn trend(samples: &[WeightedSample]) -> Option<Trend> {
+    let middle = weighted_mean(samples, |sample| sample.time)?;
+    let mean = weighted_mean(samples, |sample| sample.value)?;
+    let stretch = weighted_sum(samples, |sample| (sample.time - middle).powi(2));
+    if samples.len() < 3 || stretch <= 0.0 {
+        return None;
+    }
+    let slope = weighted_sum(samples, |sample| (sample.time - middle) * (sample.value - mean)) / stretch;
+    let residual = |sample: &WeightedSample| sample.value - mean - slope * (sample.time - middle);
+    let spread = weighted_sum(samples, |sample| residual(sample).powi(2));
+    let effective = effective_number(samples, residual).max(3.0);
+    Some(Trend { slope, standard_error: (spread / stretch / (effective - 2.0)).sqrt() })
+}
+
+/// Weighed about the first sample, so that a large constant part costs no digits; none without samples.
+fn weighted_mean(samples: &[WeightedSample], of: impl Fn(&WeightedSample) -> f64) -> Option<f64> {
+    let first = of(samples.first()?);
+    Some(first + weighted_sum(samples, |sample| of(sample) - first))
+}
+
+/// Sum with weights that sum to one.
+fn weighted_sum(samples: &[WeightedSample], of: impl Fn(&WeightedSample) -> f64) -> f64 {
+    let total: f64 = samples.iter().map(|sample| sample.weight).sum();
+    let share = |sample: &WeightedSample| {
+        if total > 0.0 { sample.weight / total } else { 1.0 / samples.len() as f64 }
+    };
+    samples.iter().map(|sample| share(sample) * of(sample)).sum()
+}
+
+/// Effective number of samples, whose deviations from what they should be follow one another.
+fn effective_number(samples: &[WeightedSample], deviation: impl Fn(&WeightedSample) -> f64) -> f64 {
+    let total: f64 = samples.iter().map(|sample| sample.weight).sum();
+    let squares: f64 = samples.iter().map(|sample| sample.weight.powi(2)).sum();
+    let count = if total > 0.0 { total * total / squares } else { samples.len() as f64 };
+    let correlation = autocorrelation(samples, deviation).max(0.0);
+    (1.0 - correlation) / (1.0 + correlation) * count
+}
+
+/// Lag-1 autocorrelation of deviations; zero where there are none.
+fn autocorrelation(samples: &[WeightedSample], deviation: impl Fn(&WeightedSample) -> f64) -> f64 {
+    let products: f64 = samples.windows(2).map(|pair| deviation(&pair[0]) * deviation(&pair[1])).sum();
+    let squares: f64 = samples.iter().map(|sample| deviation(sample).powi(2)).sum();
     if squares > 0.0 { products / squares } else { 0.0 }
 }
 
@@ -50,7 +97,8 @@ mod tests {
     use super::*;
 
     fn weighted(samples: &[(f64, f64)]) -> Vec<WeightedSample> {
-        samples.iter().map(|&(value, weight)| WeightedSample { value, weight }).collect()
+        let sample = |(place, &(value, weight))| WeightedSample { value, weight, time: place as f64 };
+        samples.iter().enumerate().map(sample).collect()
     }
 
     fn close(a: f64, b: f64) {
@@ -94,5 +142,33 @@ mod tests {
     fn constant_samples_have_no_error_of_the_mean() {
         let reading = mean(&weighted(&[(1e9, 1.0); 5])).unwrap();
         assert_eq!((reading.mean, reading.standard_error), (1e9, Some(0.0)));
+    }
+
+    #[test]
+    fn a_slope_has_the_textbook_standard_error() {
+        // Times 0 1 2 3, values 1 3 2 4: slope 4/5; residuals -0.3, 0.9, -0.9, 0.3, squares 1.8; the lag-1 products are
+        // negative, so n_eff = 4 and the error is sqrt(1.8 / 2 / 5).
+        let trend = trend(&weighted(&[(1.0, 60.0), (3.0, 60.0), (2.0, 60.0), (4.0, 60.0)])).unwrap();
+        close(trend.slope, 0.8);
+        close(trend.standard_error, 0.18_f64.sqrt());
+    }
+
+    #[test]
+    fn residuals_that_follow_one_another_make_a_slope_less_certain() {
+        // Values 1 1 -1 -1 -1 -1 1 1 have no slope; squares 8, products 1 - 1 + 1 + 1 + 1 - 1 + 1 = 3, r = 3/8,
+        // n_eff = 8 * (5/8) / (11/8) = 40/11; mean square of time 21/4; error sqrt(1 / 5.25 / (18/11)).
+        let values = [1.0, 1.0, -1.0, -1.0, -1.0, -1.0, 1.0, 1.0].map(|value| (value, 1.0));
+        let trend = trend(&weighted(&values)).unwrap();
+        close(trend.slope, 0.0);
+        close(trend.standard_error, (1.0 / 5.25 / (18.0 / 11.0_f64)).sqrt());
+    }
+
+    #[test]
+    fn a_slope_needs_three_samples_at_different_times() {
+        assert_eq!(trend(&weighted(&[(1.0, 1.0), (2.0, 1.0)])), None);
+        assert_eq!(trend(&[]), None);
+        assert_eq!(trend(&[WeightedSample { value: 1.0, weight: 1.0, time: 7.0 }; 5]), None);
+        let constant = trend(&weighted(&[(1e9, 1.0); 5])).unwrap();
+        assert_eq!(constant, Trend { slope: 0.0, standard_error: 0.0 });
     }
 }

@@ -9,3 +9,4 @@ pub mod log;
 mod parallel;
 pub mod period;
 pub mod report;
+mod series;

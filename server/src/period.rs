@@ -1,10 +1,13 @@
 //! How the samples of a log become periods: stretches of time with one reading a tag.
 
+use std::ops::Range;
+
 use jiff::Timestamp;
 use meterwright_engine::Reading;
 
-use crate::average::{WeightedSample, mean};
+use crate::average::{Trend, WeightedSample, mean, trend};
 use crate::log::{ExpectedTag, Log, LogFaults, Row, Sample};
+use crate::series::{Columns, Moment, instant, moment, usual_spacing};
 
 /// What makes a period.
 #[derive(Clone, Copy, Debug, PartialEq, Eq)]
@@ -28,17 +31,24 @@ impl Window {
     fn contains(&self, time: Timestamp) -> bool {
         self.from.is_none_or(|from| time >= from) && self.to.is_none_or(|to| time < to)
     }
+
+    /// Its first moment and the first after it.
+    pub(crate) fn moments(&self) -> (Moment, Moment) {
+        (self.from.map_or(Moment::MIN, moment), self.to.map_or(Moment::MAX, moment))
+    }
 }
 
 /// One stretch of time with one reading a tag.
 #[derive(Clone, Debug, PartialEq)]
 pub struct Period {
-    /// Time of its first sample.
+    /// Its beginning; the time of the first sample where a row or the whole log is the period.
     pub from: Timestamp,
-    /// Time of its last sample.
+    /// Its end; the time of the last sample where a row or the whole log is the period.
     pub to: Timestamp,
     /// One a tag of the plant, in its order and unit; absent where it has no good sample.
     pub readings: Vec<Option<Reading>>,
+    /// How each tag moved over the period; absent where its samples don't tell.
+    pub trends: Vec<Option<Trend>>,
     /// What its user should know of the samples.
     pub warnings: Vec<String>,
 }
@@ -102,6 +112,7 @@ fn of_row(tags: &[ExpectedTag], row: &Row) -> Period {
         from: row.time,
         to: row.time,
         readings: row.samples.iter().map(reading).collect(),
+        trends: vec![None; tags.len()],
         warnings: warnings.collect(),
     }
 }
@@ -112,66 +123,39 @@ fn of_row(tags: &[ExpectedTag], row: &Row) -> Period {
 /// the log, which is one usual spacing of the rows (their median) after the last row. What of this time lies in the
 /// window is the sample's weight, so that a value stored before the window and not changed since counts in it.
 fn whole(log: &Log, window: Window) -> Result<Option<Period>, LogFaults> {
+    let columns = Columns::read(log)?;
+    let (from, to) = window.moments();
+    let inside = || columns.rows.iter().copied().filter(|row| (from..to).contains(row));
+    let (Some(first), Some(last)) = (inside().next(), inside().next_back()) else { return Ok(None) };
+    let spacing = usual_spacing(&columns.rows).map_or(0, |(median, _)| median);
+    let end = columns.rows.last().map_or(last, |last| last.saturating_add(spacing));
     let tags = &log.expectation().tags;
-    let mut times = Vec::new();
-    let mut series: Vec<Vec<(Timestamp, Sample)>> = vec![Vec::new(); tags.len()];
-    for row in log.rows()? {
-        let row = row?;
-        times.push(row.time);
-        for (series, sample) in series.iter_mut().zip(row.samples) {
-            if sample != Sample::Absent {
-                series.push((row.time, sample));
-            }
-        }
-    }
-    times.sort_unstable();
-    for series in &mut series {
-        series.sort_by_key(|(time, _)| *time);
-    }
-    let inside = || times.iter().copied().filter(|time| window.contains(*time));
-    let (Some(from), Some(to)) = (inside().next(), inside().next_back()) else { return Ok(None) };
-    let end = end_of(&times).unwrap_or(to);
-    let mut period = Period { from, to, readings: Vec::new(), warnings: Vec::new() };
-    for (tag, series) in tags.iter().zip(&series) {
-        let (good, seen) = weigh(tag, series, window, end);
-        period.readings.push(mean(&good));
-        period.warnings.extend(unused(tag, &good, seen));
-    }
+    let period =
+        Period { from: instant(first), to: instant(last), ..averaged(tags, &columns, from..to, end) };
     Ok(Some(period))
 }
 
-/// One median spacing after the last of the times, which are sorted.
-fn end_of(times: &[Timestamp]) -> Option<Timestamp> {
-    let mut spacings: Vec<_> = times.windows(2).map(|pair| pair[0].duration_until(pair[1])).collect();
-    let middle = spacings.len() / 2;
-    let median = if spacings.is_empty() { None } else { Some(*spacings.select_nth_unstable(middle).1) };
-    times.last()?.checked_add(median.unwrap_or_default()).ok()
-}
-
-/// The good samples of a tag, in order of time, that hold in the window; and how many of any kind hold there.
-fn weigh(
-    tag: &ExpectedTag,
-    series: &[(Timestamp, Sample)],
-    window: Window,
-    end: Timestamp,
-) -> (Vec<WeightedSample>, usize) {
-    let mut good = Vec::new();
-    let mut seen = 0;
-    let nexts = series.iter().skip(1).map(|(time, _)| *time).chain([end]);
-    for (&(time, sample), next) in series.iter().zip(nexts) {
-        let begins = window.from.map_or(time, |from| from.max(time));
-        let ends = window.to.map_or(next, |to| to.min(next));
-        let held = tag.hold.map_or(f64::INFINITY, |hold| hold - seconds(time, begins));
-        let weight = seconds(begins, ends).min(held);
-        if weight <= 0.0 && !window.contains(time) {
-            continue;
-        }
-        seen += 1;
-        if let Sample::Good(value) = sample {
-            good.push(WeightedSample { value, weight: weight.max(0.0) });
-        }
+/// What the samples say of a stretch of time of a log that ends at `end`.
+pub(crate) fn averaged(
+    tags: &[ExpectedTag],
+    columns: &Columns,
+    stretch: Range<Moment>,
+    end: Moment,
+) -> Period {
+    let mut period = Period {
+        from: instant(stretch.start),
+        to: instant(stretch.end),
+        readings: Vec::with_capacity(tags.len()),
+        trends: Vec::with_capacity(tags.len()),
+        warnings: Vec::new(),
+    };
+    for (tag, series) in tags.iter().zip(&columns.tags) {
+        let (good, seen) = series.weigh(stretch.start, stretch.end, end, tag.hold);
+        period.readings.push(mean(&good));
+        period.trends.push(trend(&good));
+        period.warnings.extend(unused(tag, &good, seen));
     }
-    (good, seen)
+    period
 }
 
 /// A sentence about the samples of a tag that could not be used, if there are any.

@@ -169,8 +169,8 @@ fn time(argument: Option<&str>, zone: &TimeZone) -> Result<Option<jiff::Timestam
 
 /// Counters of which the log has samples.
 fn counters(plant: &Plant, log: &Log) -> Vec<Fault> {
-    let tags = plant.tags.iter().zip(&log.expectation().tags).zip(log.has_samples());
-    tags.filter(|((_, expected), has_samples)| expected.is_counter && **has_samples)
+    let tags = plant.tags.iter().zip(&log.expectation().tags).zip(log.sample_counts());
+    tags.filter(|((_, expected), count)| expected.is_counter && **count > 0)
         .map(|((tag, _), _)| Fault {
             span: tag.name.span,
             message: format!(

@@ -6,6 +6,7 @@ use meterwright_engine::quantity::Unit;
 use super::cell::{Cell, Table};
 use super::expectation::{Expectation, ExpectedTag};
 use super::fault::{LogFault, LogFaults, Problem};
+use super::long::LongColumns;
 use super::quality::{Sample, is_bad_word, sample};
 use super::time::WrittenTime;
 
@@ -24,7 +25,7 @@ pub(super) struct Layout {
 #[derive(Debug)]
 pub(super) enum Shape {
     Wide { time: usize, tags: Vec<TagColumn> },
-    Long { time: usize, tag: usize, value: usize, quality: Option<usize> },
+    Long(LongColumns),
 }
 
 /// A column of a wide log and its tag, by their places.
@@ -120,7 +121,7 @@ impl Head<'_> {
         if let (Some(tag), Some(value)) = (self.position("tag"), self.position("value")) {
             let quality = self.position("quality");
             self.unread(line, columns, &[Some(time), Some(tag), Some(value), quality]);
-            return Shape::Long { time, tag, value, quality };
+            return Shape::Long(LongColumns { time, tag, value, quality });
         }
         let tags = self.tag_columns(line, columns, time);
         Shape::Wide { time, tags }

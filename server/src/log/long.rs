@@ -1,7 +1,11 @@
-//! Long logs: a row a sample, with its time, tag and value. A historian may write tag after tag, so all samples are
-//! held, some fifty bytes each, and put in order of time.
+//! Long logs: a row a sample, with its time, tag and value.
+//!
+//! Where times never fall from row to row, samples are read row after row and only those of one time are kept at once. A
+//! historian may as well write tag after tag, or the newest first: then all samples are held, some forty bytes each, and
+//! put in order of time.
 
 use std::collections::{BTreeMap, HashMap};
+use std::iter::Peekable;
 
 use jiff::Timestamp;
 use meterwright_engine::fault::suggestion;
@@ -12,10 +16,10 @@ use super::fault::{LogFault, LogFaults, Problem};
 use super::layout::{Layout, Note};
 use super::quality::{Sample, judged, sample};
 use super::time::Clock;
-use super::{Row, quality};
+use super::{Row, Survey, quality};
 
 /// Columns of a long log, counted from 0.
-#[derive(Clone, Copy)]
+#[derive(Clone, Copy, Debug)]
 pub(super) struct LongColumns {
     pub(super) time: usize,
     pub(super) tag: usize,
@@ -27,59 +31,156 @@ pub(super) struct LongColumns {
 #[derive(Clone, Copy, Debug)]
 pub(super) struct LongSample {
     time: Timestamp,
-    line: u64,
-    tag: u32,
     sample: Sample,
+    tag: u32,
+    /// Line of the file; more than four thousand million lines are not told apart.
+    line: u32,
 }
 
-/// Reads a long log whole. The samples are in order of time, those of one time in the order of the plant's tags.
-pub(super) fn read(
-    table: &mut dyn Table,
-    layout: &Layout,
-    columns: LongColumns,
-    expectation: &Expectation,
-) -> Result<(Vec<LongSample>, Vec<Note>), LogFaults> {
-    let mut reader = Reader {
-        columns,
-        expectation,
-        places: expectation.names().enumerate().map(|(place, name)| (name, place)).collect(),
-        clocks: expectation.tags.iter().map(|_| Clock::new(&expectation.zone)).collect(),
-        unknown: BTreeMap::new(),
-    };
+/// What the first reading of a long log finds, and its samples where they must be held.
+pub(super) struct Surveyed {
+    pub(super) survey: Survey,
+    pub(super) notes: Vec<Note>,
+    /// In order of time, those of one time in the order of the plant's tags; none where the log itself is in order.
+    pub(super) held: Option<Vec<LongSample>>,
+}
+
+/// Reads a long log once, and where its times fall, once more to hold its samples. `open` opens it behind its head.
+pub(super) fn survey<'l>(
+    open: impl Fn() -> Result<LongSamples<'l>, LogFaults>,
+) -> Result<Surveyed, LogFaults> {
+    let mut samples = open()?;
+    let (column, expectation) = (samples.reader.columns.time + 1, samples.reader.expectation);
+    let mut survey = Survey { rows: 0, samples: vec![0; expectation.tags.len()] };
     let mut faults = LogFaults::default();
-    let mut samples = Vec::new();
-    loop {
-        match table.advance() {
-            Ok(false) => break,
-            Ok(true) => {
-                match layout.width_fault(table).map_or_else(|| reader.sample(table), |fault| Err(vec![fault]))
-                {
-                    Ok(sample) => samples.extend(sample),
-                    Err(found) => faults.extend(found),
+    let mut repeats = Vec::new();
+    // One a tag: its sample before.
+    let mut latest: Vec<Option<LongSample>> = vec![None; expectation.tags.len()];
+    let mut previous = Timestamp::MIN;
+    let mut in_order = true;
+    for read in samples.by_ref() {
+        match read {
+            Ok(sample) => {
+                survey.rows += usize::from(sample.time != previous || survey.rows == 0);
+                in_order &= sample.time >= previous;
+                previous = sample.time;
+                let tag = sample.tag as usize;
+                survey.samples[tag] += 1;
+                let before = latest[tag].replace(sample);
+                if in_order && before.is_some_and(|before| before.time == sample.time) {
+                    repeats.extend(before.map(|before| repeated(before, sample, column, expectation)));
                 }
             }
-            Err(fault) => {
-                faults.push(fault);
-                break;
-            }
+            Err(found) => faults.extend(found),
         }
     }
-    samples.sort_by_key(|sample: &LongSample| (sample.time, sample.tag, sample.line));
-    let notes = reader.notes(columns.tag + 1);
-    faults.extend(repeated(&samples, columns.time + 1, expectation));
-    faults.or((samples, notes))
+    let notes = samples.reader.notes();
+    let held = if in_order {
+        faults.extend(repeats);
+        None
+    } else {
+        let held = held(open()?, survey.samples.iter().sum());
+        let same = held.windows(2).filter(|pair| pair[0].time == pair[1].time && pair[0].tag == pair[1].tag);
+        faults.extend(same.map(|pair| repeated(pair[0], pair[1], column, expectation)));
+        survey.rows = held.chunk_by(|a, b| a.time == b.time).count();
+        Some(held)
+    };
+    if survey.rows == 0 && faults.first.is_empty() {
+        faults.push(LogFault::of_file(Problem::NoSamples));
+    }
+    faults.in_order().or(Surveyed { survey, notes, held })
 }
 
-/// Samples as rows: those of one time together.
-pub(super) fn rows(samples: &[LongSample], tags: usize) -> impl Iterator<Item = Row> {
-    samples.chunk_by(|a, b| a.time == b.time).map(move |at_one_time| {
+/// All samples in order of time; what is wrong with others has been said.
+fn held(samples: LongSamples<'_>, count: usize) -> Vec<LongSample> {
+    let mut held = Vec::with_capacity(count);
+    held.extend(samples.filter_map(Result::ok));
+    held.sort_unstable_by_key(|sample: &LongSample| (sample.time, sample.tag, sample.line));
+    held
+}
+
+/// A tag has one sample at a time.
+fn repeated(first: LongSample, again: LongSample, column: usize, expectation: &Expectation) -> LogFault {
+    let tag = expectation.tags[again.tag as usize].name.clone();
+    let problem = Problem::RepeatedSample { tag, first: first.line.into() };
+    LogFault { line: again.line.into(), column, problem }
+}
+
+/// Samples in order of time as rows: those of one time together.
+pub(super) struct LongRows<S: Iterator> {
+    samples: Peekable<S>,
+    tags: usize,
+}
+
+impl<S: Iterator<Item = Result<LongSample, Vec<LogFault>>>> LongRows<S> {
+    pub(super) fn new(samples: S, tags: usize) -> Self {
+        Self { samples: samples.peekable(), tags }
+    }
+}
+
+impl<S: Iterator<Item = Result<LongSample, Vec<LogFault>>>> Iterator for LongRows<S> {
+    type Item = Result<Row, Vec<LogFault>>;
+
+    fn next(&mut self) -> Option<Self::Item> {
+        let first = match self.samples.next()? {
+            Ok(first) => first,
+            Err(faults) => return Some(Err(faults)),
+        };
         let mut row =
-            Row { time: at_one_time[0].time, line: at_one_time[0].line, samples: vec![Sample::Absent; tags] };
-        for sample in at_one_time {
+            Row { time: first.time, line: first.line.into(), samples: vec![Sample::Absent; self.tags] };
+        row.samples[first.tag as usize] = first.sample;
+        let at_its_time = |read: &S::Item| read.as_ref().is_ok_and(|sample| sample.time == first.time);
+        while let Some(Ok(sample)) = self.samples.next_if(at_its_time) {
             row.samples[sample.tag as usize] = sample.sample;
         }
-        row
-    })
+        Some(Ok(row))
+    }
+}
+
+/// The samples of a long log in the order of the file, each or everything that is wrong with its row.
+pub(super) struct LongSamples<'l> {
+    table: Box<dyn Table>,
+    layout: &'l Layout,
+    reader: Reader<'l>,
+    /// Set where the file can't be read on.
+    broken: bool,
+}
+
+impl<'l> LongSamples<'l> {
+    /// Reads on from a table that is behind its head.
+    pub(super) fn new(
+        table: Box<dyn Table>,
+        layout: &'l Layout,
+        columns: LongColumns,
+        expectation: &'l Expectation,
+    ) -> Self {
+        Self { table, layout, reader: Reader::new(columns, expectation), broken: false }
+    }
+}
+
+impl Iterator for LongSamples<'_> {
+    type Item = Result<LongSample, Vec<LogFault>>;
+
+    fn next(&mut self) -> Option<Self::Item> {
+        while !self.broken {
+            match self.table.advance() {
+                Ok(false) => return None,
+                Ok(true) => {
+                    let width_fault = self.layout.width_fault(&*self.table);
+                    let read = width_fault
+                        .map_or_else(|| self.reader.sample(&*self.table), |fault| Err(vec![fault]));
+                    if let Some(sample) = read.transpose() {
+                        return Some(sample);
+                    }
+                }
+                Err(fault) => {
+                    self.broken = true;
+                    return Some(Err(vec![fault]));
+                }
+            }
+        }
+        None
+    }
 }
 
 /// A tag's name that the plant file does not have: where it stands first and how often.
@@ -97,7 +198,17 @@ struct Reader<'e> {
     unknown: BTreeMap<String, Unknown>,
 }
 
-impl Reader<'_> {
+impl<'e> Reader<'e> {
+    fn new(columns: LongColumns, expectation: &'e Expectation) -> Self {
+        Self {
+            columns,
+            expectation,
+            places: expectation.names().enumerate().map(|(place, name)| (name, place)).collect(),
+            clocks: expectation.tags.iter().map(|_| Clock::new(&expectation.zone)).collect(),
+            unknown: BTreeMap::new(),
+        }
+    }
+
     /// The sample of the current row; none if no tag of the plant file has it, or there is no new laboratory value.
     fn sample(&mut self, table: &dyn Table) -> Result<Option<LongSample>, Vec<LogFault>> {
         let name = table.cell(self.columns.tag);
@@ -112,7 +223,8 @@ impl Reader<'_> {
         let time = time.map_err(|error| fault(table, self.columns.time, error.into()));
         match (time, self.value(table, tag)) {
             (Ok(time), Ok(sample)) => {
-                Ok(sample.map(|sample| LongSample { time, line: table.line(), tag: tag as u32, sample }))
+                let line = u32::try_from(table.line()).unwrap_or(u32::MAX);
+                Ok(sample.map(|sample| LongSample { time, line, tag: tag as u32, sample }))
             }
             (time, value) => Err(time.err().into_iter().chain(value.err()).collect()),
         }
@@ -138,10 +250,10 @@ impl Reader<'_> {
         Ok((!no_new_value).then(|| expected.within_span(read)))
     }
 
-    fn notes(&self, column: usize) -> Vec<Note> {
+    fn notes(&self) -> Vec<Note> {
         let note = |(name, unknown): (&String, &Unknown)| Note {
             line: unknown.line,
-            column,
+            column: self.columns.tag + 1,
             message: format!(
                 "samples of `{name}` are not read ({} in all): no tag of the plant file has this name{}",
                 unknown.count,
@@ -154,19 +266,4 @@ impl Reader<'_> {
 
 fn fault(table: &dyn Table, index: usize, problem: Problem) -> LogFault {
     LogFault { line: table.line(), column: table.column(index), problem }
-}
-
-/// A tag has one sample at a time.
-fn repeated<'s>(
-    samples: &'s [LongSample],
-    column: usize,
-    expectation: &'s Expectation,
-) -> impl Iterator<Item = LogFault> + 's {
-    samples.windows(2).filter(|pair| pair[0].time == pair[1].time && pair[0].tag == pair[1].tag).map(
-        move |pair| {
-            let tag = expectation.tags[pair[1].tag as usize].name.clone();
-            let problem = Problem::RepeatedSample { tag, first: pair[0].line };
-            LogFault { line: pair[1].line, column, problem }
-        },
-    )
 }

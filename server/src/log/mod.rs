@@ -1,8 +1,9 @@
 //! Logs: files of samples, read row after row.
 //!
 //! A log is first a table of cells ([`form`]: one file a form, found by a table), then wide or long ([`wide`], [`long`]).
-//! Everything that is wrong with it is found when it is opened; wide text logs are then read a second time as they are
-//! used, so that memory stays flat however long they are.
+//! Everything that is wrong with it is found when it is opened; text logs are then read a second time as they are
+//! used, so that memory stays flat however long they are. Only the samples of a long log that is not in order of time
+//! are held, and the cells of a workbook while it is read.
 
 mod cell;
 mod compression;
@@ -29,9 +30,9 @@ pub use time::TimeError;
 
 pub(crate) use time::{Instants, WrittenTime, instants};
 
-use cell::{Cell, DecimalMark};
+use cell::{Cell, DecimalMark, Table};
 use layout::{Layout, Shape};
-use long::{LongColumns, LongSample};
+use long::{LongColumns, LongRows, LongSample, LongSamples, Surveyed};
 use time::Clock;
 use wide::WideRows;
 
@@ -53,10 +54,17 @@ pub struct Log {
     expectation: Expectation,
     layout: Layout,
     notes: Vec<Note>,
-    /// The samples of a long log.
-    held: Vec<LongSample>,
-    /// One a tag of the plant: whether it has any sample.
-    has_samples: Vec<bool>,
+    survey: Survey,
+    /// The samples of a long log that is not in order of time.
+    held: Option<Vec<LongSample>>,
+}
+
+/// How much there is in a log.
+#[derive(Debug, Default)]
+struct Survey {
+    rows: usize,
+    /// One a tag of the plant.
+    samples: Vec<usize>,
 }
 
 impl Log {
@@ -65,18 +73,17 @@ impl Log {
     /// # Errors
     /// Everything that is wrong with it, in the order of the file.
     pub fn open(path: &Path, expectation: Expectation) -> Result<Self, LogFaults> {
-        let mut table = form::open(path)?;
-        let (layout, mut notes) = Layout::read(&mut *table, &expectation)?;
-        let mut held = Vec::new();
-        if let Shape::Long { time, tag, value, quality } = layout.shape {
-            let columns = LongColumns { time, tag, value, quality };
-            let (samples, unknown) = long::read(&mut *table, &layout, columns, &expectation)?;
-            held = samples;
-            notes.extend(unknown);
-        }
+        let (layout, notes) = Layout::read(&mut *form::open(path)?, &expectation)?;
         let mut log =
-            Self { path: path.to_owned(), expectation, layout, notes, held, has_samples: Vec::new() };
-        log.has_samples = log.check()?;
+            Self { path: path.to_owned(), expectation, layout, notes, survey: Survey::default(), held: None };
+        match log.layout.shape {
+            Shape::Wide { .. } => log.survey = log.survey()?,
+            Shape::Long(columns) => {
+                let Surveyed { survey, notes, held } = long::survey(|| log.long_samples(columns))?;
+                (log.survey, log.held) = (survey, held);
+                log.notes.extend(notes);
+            }
+        }
         log.notes.extend(log.without_samples());
         Ok(log)
     }
@@ -86,9 +93,14 @@ impl Log {
         &self.notes
     }
 
-    /// Whether there is any sample of each tag of the plant, in its order.
-    pub fn has_samples(&self) -> &[bool] {
-        &self.has_samples
+    /// How many samples of any quality there are of each tag of the plant, in its order.
+    pub fn sample_counts(&self) -> &[usize] {
+        &self.survey.samples
+    }
+
+    /// How many rows [`Log::rows`] has.
+    pub fn row_count(&self) -> usize {
+        self.survey.rows
     }
 
     /// What it was read with.
@@ -101,13 +113,16 @@ impl Log {
     /// # Errors
     /// The file can't be opened or read again, or has changed since.
     pub fn rows(&self) -> Result<Box<dyn Iterator<Item = Result<Row, LogFaults>> + '_>, LogFaults> {
-        match &self.layout.shape {
-            Shape::Long { .. } => Ok(Box::new(long::rows(&self.held, self.expectation.tags.len()).map(Ok))),
-            Shape::Wide { time, tags } => {
-                let mut table = form::open(&self.path)?;
-                for _ in 0..self.layout.head_rows {
-                    table.advance()?;
-                }
+        let tag_count = self.expectation.tags.len();
+        match (&self.layout.shape, &self.held) {
+            (Shape::Long(_), Some(held)) => {
+                Ok(Box::new(LongRows::new(held.iter().copied().map(Ok), tag_count).map(collected)))
+            }
+            (Shape::Long(columns), None) => {
+                Ok(Box::new(LongRows::new(self.long_samples(*columns)?, tag_count).map(collected)))
+            }
+            (Shape::Wide { time, tags }, _) => {
+                let table = self.behind_head()?;
                 let clock = Clock::new(&self.expectation.zone);
                 let (layout, expectation) = (&self.layout, &self.expectation);
                 let rows = WideRows { table, layout, time: *time, tags, expectation, clock, broken: false };
@@ -116,17 +131,31 @@ impl Log {
         }
     }
 
-    /// Reads everything once for its faults; answers which tags have samples.
-    fn check(&self) -> Result<Vec<bool>, LogFaults> {
+    fn long_samples(&self, columns: LongColumns) -> Result<LongSamples<'_>, LogFaults> {
+        Ok(LongSamples::new(self.behind_head()?, &self.layout, columns, &self.expectation))
+    }
+
+    /// The file, opened anew and read to the last row before its samples.
+    fn behind_head(&self) -> Result<Box<dyn Table>, LogFaults> {
+        let mut table = form::open(&self.path)?;
+        for _ in 0..self.layout.head_rows {
+            table.advance()?;
+        }
+        Ok(table)
+    }
+
+    /// Reads all rows of a wide log once for their faults.
+    fn survey(&self) -> Result<Survey, LogFaults> {
         let mut faults = LogFaults::default();
-        let mut has_samples = vec![false; self.expectation.tags.len()];
+        let mut survey = Survey { rows: 0, samples: vec![0; self.expectation.tags.len()] };
         let mut order = Order::default();
         for row in self.rows()? {
             match row {
                 Ok(row) => {
                     order.see(row.time);
-                    for (has, sample) in has_samples.iter_mut().zip(&row.samples) {
-                        *has |= *sample != Sample::Absent;
+                    survey.rows += 1;
+                    for (count, sample) in survey.samples.iter_mut().zip(&row.samples) {
+                        *count += usize::from(*sample != Sample::Absent);
                     }
                 }
                 Err(found) => faults.extend(found.first),
@@ -135,10 +164,10 @@ impl Log {
         if order.may_repeat() {
             faults.extend(self.repeated_times()?);
         }
-        if order.previous.is_none() && faults.first.is_empty() {
+        if survey.rows == 0 && faults.first.is_empty() {
             faults.push(LogFault::of_file(Problem::NoSamples));
         }
-        faults.in_order().or(has_samples)
+        faults.in_order().or(survey)
     }
 
     /// Rows at a time that an earlier row has.
@@ -159,8 +188,8 @@ impl Log {
 
     /// A note that lists the tags of the plant of which there is nothing.
     fn without_samples(&self) -> Option<Note> {
-        let tags = self.expectation.names().zip(&self.has_samples);
-        let missing: Vec<&str> = tags.filter(|(_, has)| !**has).map(|(name, _)| name).collect();
+        let tags = self.expectation.names().zip(&self.survey.samples);
+        let missing: Vec<&str> = tags.filter(|(_, count)| **count == 0).map(|(name, _)| name).collect();
         (!missing.is_empty()).then(|| Note {
             line: 1,
             column: 1,

@@ -10,3 +10,4 @@ mod parallel;
 pub mod period;
 pub mod report;
 mod series;
+pub mod steady;

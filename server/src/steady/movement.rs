@@ -1,0 +1,146 @@
+//! When a tag moved: the statistic R run forwards and backwards over its values at even times.
+
+use super::ratio::{MEMORY, ratios};
+use crate::series::{Moment, Series};
+
+/// How values are taken at even times.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub(super) struct Cells {
+    /// Usual time between samples.
+    pub(super) spacing: Moment,
+    /// Time between values; not less than the spacing.
+    pub(super) width: Moment,
+}
+
+/// So many values are looked at together for whether they are independent.
+const BLOCK: usize = 10;
+
+/// A tag that left its steady state.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub(super) struct Movement {
+    pub(super) from: Moment,
+    pub(super) to: Moment,
+    /// The largest R.
+    pub(super) ratio: f64,
+}
+
+/// Whether neighbouring values are independent while the tag is steady, as R takes them to be. `noise` is that of
+/// [`ratios`].
+///
+/// In blocks of ten values the variance about the mean is compared with that of the differences, as R does but without its
+/// memory (J. von Neumann, Annals of Mathematical Statistics 12 (1941) 367-395, from memory). The median of the blocks
+/// shows no movement that takes less than half of the log. Independent values have a median of 1; a first-order correlation of
+/// 0.1 moves it to about 1.1, and that of n blocks strays from its own by about 0.4 / sqrt(n).
+pub(super) fn are_independent(series: &Series, stretches: &[[Moment; 2]], cells: Cells, noise: f64) -> bool {
+    let floor = 2.0 * noise * noise;
+    let mut ratios: Vec<f64> = Vec::new();
+    for stretch in stretches {
+        let values = values(series, *stretch, cells).map_or_else(Vec::new, |(_, values)| values);
+        ratios.extend(values.chunks_exact(BLOCK).map(|block| {
+            let mean = block.iter().sum::<f64>() / BLOCK as f64;
+            let variance = block.iter().map(|value| (value - mean).powi(2)).sum::<f64>() / (BLOCK - 1) as f64;
+            let differences =
+                block.windows(2).map(|pair| (pair[1] - pair[0]).powi(2)).sum::<f64>() / (BLOCK - 1) as f64;
+            if differences + floor > 0.0 { (2.0 * variance + floor) / (differences + floor) } else { 1.0 }
+        }));
+    }
+    let middle = ratios.len() / 2;
+    let allowed = 1.1 + 1.0 / (ratios.len() as f64).sqrt();
+    ratios.is_empty() || *ratios.select_nth_unstable_by(middle, f64::total_cmp).1 <= allowed
+}
+
+/// When a tag moved between two moments without a gap in the log. `noise` is that of [`ratios`].
+pub(super) fn movements(
+    series: &Series,
+    [from, to]: [Moment; 2],
+    cells: Cells,
+    noise: f64,
+    limit: f64,
+) -> Vec<Movement> {
+    let Some((first, values)) = values(series, [from, to], cells) else { return Vec::new() };
+    let at = |place: usize| first + place as Moment * cells.width;
+    let moved =
+        |run: &Run| Movement { from: at(run.first).max(from), to: at(run.last + 1).min(to), ratio: run.peak };
+    runs_of_movement(&values, noise, limit).iter().map(moved).collect()
+}
+
+/// The tag's values at even times from its first good sample on, and the time of that.
+///
+/// A value is the mean of the good samples about its time, and where there are none the one before: a historian that
+/// stores on change says by its silence that nothing changed. Samples are told apart half a spacing before a value's time,
+/// so that those that come a little early or late still fall one to a value. R sees even times and not the samples as they
+/// were stored, because samples that are stored on change crowd where the value moves: R over them would remember in
+/// samples and not in time, and could neither rise where a value that moved stands still again nor fall.
+fn values(series: &Series, [from, to]: [Moment; 2], cells: Cells) -> Option<(Moment, Vec<f64>)> {
+    let mut good = series.within(from, to).filter(|(_, value)| !value.is_nan()).peekable();
+    let first = good.peek()?.0;
+    let begins = first - cells.spacing / 2;
+    let mut values = Vec::new();
+    let mut held = f64::NAN;
+    for place in 0..((to - first) as u64).div_ceil(cells.width as u64) as Moment {
+        let ends = begins + (place + 1) * cells.width;
+        let (mut sum, mut count) = (0.0, 0.0);
+        while let Some((_, value)) = good.next_if(|(time, _)| *time < ends) {
+            sum += value;
+            count += 1.0;
+        }
+        if count > 0.0 {
+            held = sum / count;
+        }
+        values.push(held);
+    }
+    Some((first, values))
+}
+
+/// A stretch of values, by the places of its first and last, and the largest R in it.
+#[derive(Clone, Copy, Debug, PartialEq)]
+struct Run {
+    first: usize,
+    last: usize,
+    peak: f64,
+}
+
+/// Where R says, seen from both sides, that the values moved.
+///
+/// R rises within a few values of where a movement begins, but takes long to fall when it is over; run backwards in time it
+/// does so at the movement's end. What both runs call moved is the movement itself, with neither the delay nor the
+/// long memory. A step is moved at its two sides.
+fn runs_of_movement(values: &[f64], noise: f64, limit: f64) -> Vec<Run> {
+    let forwards = runs(&ratios(values.iter().copied(), noise), limit);
+    let end = values.len().saturating_sub(1);
+    let mut backwards = runs(&ratios(values.iter().rev().copied(), noise), limit);
+    backwards.reverse();
+    for run in &mut backwards {
+        (run.first, run.last) = (end - run.last, end - run.first);
+    }
+    let mut both = Vec::new();
+    for run in &forwards {
+        for other in backwards.iter().filter(|other| other.first <= run.last && run.first <= other.last) {
+            both.push(Run {
+                first: run.first.max(other.first),
+                last: run.last.min(other.last),
+                peak: run.peak.max(other.peak),
+            });
+        }
+    }
+    both
+}
+
+/// The stretches in which R exceeds the limit, each with what comes before it since R was last at or below 1, its value at
+/// steady state, but with no more than R remembers; and one value more, from which the first step was made.
+fn runs(ratios: &[f64], limit: f64) -> Vec<Run> {
+    let mut runs = Vec::new();
+    let mut place = 0;
+    while place < ratios.len() {
+        let length = ratios[place..].iter().take_while(|ratio| **ratio > 1.0).count();
+        let above = &ratios[place..place + length];
+        let exceeds = |ratio: &f64| *ratio > limit;
+        if let (Some(first), Some(last)) = (above.iter().position(exceeds), above.iter().rposition(exceeds)) {
+            let peak = above.iter().copied().fold(0.0, f64::max);
+            let first = place.max((place + first).saturating_sub(MEMORY)).saturating_sub(1);
+            runs.push(Run { first, last: place + last, peak });
+        }
+        place += length.max(1);
+    }
+    runs
+}

@@ -5,4 +5,6 @@ mod files;
 mod log_faults;
 mod log_forms;
 mod period_means;
+mod steady_periods;
+mod streams;
 mod times;

@@ -1,5 +1,7 @@
 //! The command line.
 
+mod found;
+mod progress;
 mod reconcile;
 
 use std::ffi::OsString;

@@ -5,15 +5,17 @@ use std::fs;
 use std::io::{self, BufWriter, Write};
 use std::path::{Path, PathBuf};
 
-use clap::{Args, ValueEnum};
+use clap::Args;
 use jiff::tz::TimeZone;
 use meterwright_engine::plant::{self, Plant};
 use meterwright_engine::{Balance, CompiledPlant, Fault, Outcome, Position};
 
 use super::Status;
+use super::found::{Found, PeriodChoice};
+use super::progress::Progress;
 use crate::log::{Expectation, Instants, Log, LogFaults, WrittenTime, instants};
 use crate::parallel;
-use crate::period::{Period, PeriodRule, Periods, Window, periods};
+use crate::period::{Period, Window};
 use crate::report::{JsonReport, Labels, Report, TextReport};
 
 /// Balance the readings of a log within their uncertainties
@@ -26,7 +28,7 @@ pub(super) struct Arguments {
     /// Write one JSON object instead of a report
     #[arg(long)]
     json: bool,
-    /// What makes a period: a steady stretch, each row, or the whole log averaged
+    /// What makes a period
     #[arg(long, value_enum, default_value_t = PeriodChoice::Steady)]
     periods: PeriodChoice,
     /// Balance with every tag as it stands and look for no errors
@@ -38,13 +40,6 @@ pub(super) struct Arguments {
     /// Leave out this time and what comes after it
     #[arg(long, value_name = "TIME")]
     to: Option<String>,
-}
-
-#[derive(Clone, Copy, Debug, ValueEnum)]
-enum PeriodChoice {
-    Steady,
-    Row,
-    Whole,
 }
 
 /// Why there is nothing more to write.
@@ -88,7 +83,9 @@ pub(super) fn run(arguments: &Arguments) -> Status {
 }
 
 fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
-    let rule = rule(arguments)?;
+    if !arguments.no_search {
+        return Err(Stop::Usage("this version looks for no errors: add --no-search".to_owned()));
+    }
     let text = read(&arguments.plant)?;
     let at = |faults: Vec<Fault>| plant_faults(&arguments.plant, &text, &faults);
     let (plant, mut faults) = plant::parse_leniently(&text);
@@ -109,8 +106,9 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     let window =
         Window { from: time(arguments.from.as_deref(), &zone)?, to: time(arguments.to.as_deref(), &zone)? };
     let in_log = |faults| log_faults(&arguments.log, &faults);
-    let (compiled, log) = match (compiled.map_err(at), Log::open(&arguments.log, expectation).map_err(in_log))
-    {
+    let reading = Progress::reading(&arguments.log);
+    let log = Log::open(&arguments.log, expectation);
+    let (compiled, log) = match (compiled.map_err(at), log.map_err(in_log)) {
         (Ok(compiled), Ok(log)) => (compiled, log),
         (compiled, log) => {
             return Err(Stop::Input([compiled.err(), log.err()].into_iter().flatten().flatten().collect()));
@@ -121,7 +119,7 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
         return Err(Stop::Input(at(counters)));
     }
     let notes = notes(&arguments.log, &log);
-    notes.iter().for_each(say);
+    reading.aside(|| notes.iter().for_each(say));
     let labels = Labels::from(&compiled);
     let (plant_name, revision) = (plant.name.value.as_str(), plant.revision.as_str());
     let report: Box<dyn Report> = if arguments.json {
@@ -129,22 +127,13 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     } else {
         Box::new(TextReport { plant: plant_name, revision, zone: &zone, labels })
     };
-    let periods = periods(rule, &log, window).map_err(|faults| Stop::Input(in_log(faults)))?;
-    let run = Run { compiled: &compiled, report: &*report, log: &arguments.log };
-    run.balance_all(periods, notes)
-}
-
-/// What this version can do of what is asked for.
-fn rule(arguments: &Arguments) -> Result<PeriodRule, Stop> {
-    match arguments.periods {
-        PeriodChoice::Row if arguments.no_search => Ok(PeriodRule::Row),
-        PeriodChoice::Whole if arguments.no_search => Ok(PeriodRule::Whole),
-        _ => Err(Stop::Usage(
-            "this version looks for no errors and finds no steady periods: add --no-search, and --periods row (each row \
-             is one period) or --periods whole (the log is averaged into one)"
-                .to_owned(),
-        )),
-    }
+    let found = Found::of(arguments.periods, &plant, &log, window);
+    let found = found.map_err(|faults| Stop::Input(in_log(faults)))?;
+    drop(reading);
+    at(found.silent.clone()).iter().chain(&found.rejections).chain(&found.summary).for_each(say);
+    let run =
+        Run { compiled: &compiled, report: &*report, log: &arguments.log, is_for_people: !arguments.json };
+    run.balance_all(found, notes)
 }
 
 fn read(path: &Path) -> Result<String, Stop> {
@@ -174,8 +163,8 @@ fn counters(plant: &Plant, log: &Log) -> Vec<Fault> {
         .map(|((tag, _), _)| Fault {
             span: tag.name.span,
             message: format!(
-                "`{}` is a counter: what it reads is the rate over a steady period, which this version doesn't find; leave \
-                 its column out of the log",
+                "`{}` is a counter: what it reads is the rate over a period, which this version doesn't work out; leave its \
+                 column out of the log",
                 tag.name.value
             ),
         })
@@ -213,21 +202,23 @@ struct Run<'r> {
     compiled: &'r CompiledPlant,
     report: &'r dyn Report,
     log: &'r Path,
+    is_for_people: bool,
 }
 
 impl Run<'_> {
     /// Balances all periods and writes each as it is finished. What is to be known of the log as a whole goes with the
     /// first balance.
-    fn balance_all(&self, periods: Periods<'_>, notes: Vec<String>) -> Result<Tally, Stop> {
-        let mut periods = periods.peekable();
-        if periods.peek().is_none() {
-            let fault = format!("{}:1:1: no row lies between the times given", self.log.display());
-            return Err(Stop::Input(vec![fault]));
-        }
+    fn balance_all(&self, found: Found<'_>, notes: Vec<String>) -> Result<Tally, Stop> {
+        let mut periods = found.periods.peekable();
         let anchor = match periods.peek() {
+            None if found.rejections.is_empty() => {
+                let fault = format!("{}:1:1: no row lies between the times given", self.log.display());
+                return Err(Stop::Input(vec![fault]));
+            }
             Some(Ok(first)) => self.compiled.anchor(&first.readings),
             _ => None,
         };
+        let progress = Progress::balancing(found.count);
         let mut output = BufWriter::new(io::stdout().lock());
         let mut tally = Tally::default();
         let mut notes = Some(notes);
@@ -242,21 +233,35 @@ impl Run<'_> {
             }
             let finished = parallel::map(&batch, |period| {
                 let balance = self.compiled.balance(&period.readings, anchor.as_ref());
+                progress.advance();
                 (self.report.balance(period, &balance), not_found(period, &balance))
             });
-            for (text, reason) in finished {
-                if tally.made > 0 {
-                    output.write_all(self.report.between()).map_err(Stop::Output)?;
-                }
-                output.write_all(&text).map_err(Stop::Output)?;
-                tally.made += 1;
-                tally.converged += usize::from(reason.is_none());
-                reason.iter().for_each(say);
-            }
-            output.flush().map_err(Stop::Output)?;
+            progress.aside(|| self.write(&mut output, &finished, &mut tally)).map_err(Stop::Output)?;
+        }
+        if tally.made == 0 && self.is_for_people {
+            found.rejections.iter().try_for_each(|line| writeln!(output, "{line}")).map_err(Stop::Output)?;
         }
         output.write_all(self.report.tail()).and_then(|()| output.flush()).map_err(Stop::Output)?;
         Ok(tally)
+    }
+
+    /// Writes balances, each with the line about it if it was not found.
+    fn write(
+        &self,
+        output: &mut impl Write,
+        finished: &[(Vec<u8>, Option<String>)],
+        tally: &mut Tally,
+    ) -> io::Result<()> {
+        for (text, reason) in finished {
+            if tally.made > 0 {
+                output.write_all(self.report.between())?;
+            }
+            output.write_all(text)?;
+            tally.made += 1;
+            tally.converged += usize::from(reason.is_none());
+            reason.iter().for_each(say);
+        }
+        output.flush()
     }
 
     fn batch(

@@ -138,6 +138,10 @@ impl<'s> Search<'s> {
         let mut rejected = Rejected::default();
         let mut at = self.extent.start;
         let end = self.extent.end;
+        if self.watched.is_empty() {
+            rejected.add(self.extent.clone(), Cause::NothingToWatch);
+            at = end;
+        }
         for (range, cause) in self.disturbances() {
             if range.start > at {
                 self.cut(at..range.start, steady, &mut rejected);

@@ -55,6 +55,8 @@ pub enum Cause {
         /// Its name.
         tag: String,
     },
+    /// Not one tag can be watched.
+    NothingToWatch,
     /// It was steady, but for less than a period.
     Short {
         /// How long a period is, min.
@@ -137,7 +139,7 @@ impl Cause {
     /// How far beyond its limit it is.
     fn weight(&self) -> f64 {
         match self {
-            Self::NoRows => f64::INFINITY,
+            Self::NoRows | Self::NothingToWatch => f64::INFINITY,
             Self::NoGoodSample { .. } => f64::MAX,
             Self::Moved { ratio, limit, .. } => ratio / limit,
             Self::Drifted { drift, sigma, .. } => drift.abs() / sigma,
@@ -159,6 +161,9 @@ impl std::fmt::Display for Cause {
                 )
             }
             Self::NoRows => write!(f, "the log has no rows"),
+            Self::NothingToWatch => {
+                write!(f, "no tag that would show whether the plant is steady has a good sample")
+            }
             Self::NoGoodSample { tag } => write!(f, "{tag} has no good sample"),
             Self::Short { period } => write!(f, "steady, but shorter than a period of {period:.0} min"),
         }

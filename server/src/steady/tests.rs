@@ -267,6 +267,9 @@ fn a_named_tag_without_a_good_sample_is_told_and_not_watched() {
     let steady = found(&plant(2, "watch = [\"F0\", \"F1\"]"), &columns);
     assert_eq!((&steady.silent[..], &steady.watched[..]), (&["F0".to_owned()][..], &["F1".to_owned()][..]));
     assert_eq!(steady.periods.len(), 2);
+    let steady = found(&plant(2, "watch = [\"F0\"]"), &columns);
+    assert_eq!((steady.periods.len(), rejected(&steady)), (0, vec![(0.0, 120.0)]));
+    assert_eq!(steady.rejections[0].reasons[0].cause, Cause::NothingToWatch);
 }
 
 #[test]

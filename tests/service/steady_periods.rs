@@ -10,15 +10,15 @@ use crate::files::lines;
 const STEADY: &[&str] = &["--no-search"];
 const STEADY_JSON: &[&str] = &["--no-search", "--json"];
 
-/// Four hours of minutes from 07:00 local time in which the river swells within a quarter of an hour, after two hours; a little
-/// noise that always is the same, since sines of incommensurable periods are no noise to R but their steps are.
+/// Four hours of minutes from 07:00 local time, in which the river swells within a quarter of an hour after the first two.
+/// What stands for noise is the same in every run.
 fn swelling() -> impl Iterator<Item = (i64, [f64; 3])> {
     let wobble =
         |minute: i64, tag: i64| ((minute * minute * 7 + minute * 13 + tag * 29) % 17) as f64 / 17.0 - 0.5;
     (0..240).map(move |minute| {
         let swell = 2.0 * (minute - 120).clamp(0, 15) as f64;
-        let flows = [100.0 + swell, 60.0 + 0.6 * swell, 40.0 + 0.4 * swell];
-        (minute, [0, 1, 2].map(|tag| flows[tag as usize] + wobble(minute, tag)))
+        let flows = [(100.0 + swell, 0), (60.0 + 0.6 * swell, 1), (40.0 + 0.4 * swell, 2)];
+        (minute, flows.map(|(flow, tag)| flow + wobble(minute, tag)))
     })
 }
 

@@ -31,13 +31,15 @@ const FALSE_REJECTIONS: f64 = 0.05;
 /// So many values a period may R see of a tag: the means of finer samples. The first that a log's spacing allows is taken
 /// at which neighbouring values of the tag are independent; the last where none is.
 const VALUES: [Moment; 5] = [60, 30, 20, 12, 6];
-/// A false movement takes in about so many values, as many as the filters remember to its two sides: it can come out of as
-/// many looks at each tag, however few values a period has.
-const LOOKS: Moment = 2 * ratio::MEMORY as Moment;
+/// A false movement takes in about so many values, the ten that the filters remember to each of its sides: it can come out
+/// of as many looks at each tag, however few values a period has.
+const LOOKS: Moment = 20;
 /// A tag may have no good sample, and a log no rows, for this share of a period.
 const LONGEST_SILENCE: Moment = 6;
-/// Rows are missing where the time between two exceeds what 19 in 20 don't exceed by half.
+/// Rows are missing where the time between two exceeds by half what 19 in 20 don't exceed,
 const MISSING: (Moment, Moment) = (3, 2);
+/// or so many periods: nobody would take a plant for steady that was not seen for so long.
+const UNSEEN: Moment = 24;
 /// A drift counts where it is certain by so many standard deviations and exceeds the tag's standard uncertainty.
 const CERTAIN_DRIFT: f64 = 4.0;
 
@@ -121,13 +123,15 @@ impl<'s> Search<'s> {
         let begin = columns.rows.first().copied().unwrap_or(0);
         let end = columns.rows.last().map_or(0, |last| last.saturating_add(spacing));
         let (from, to) = window.moments();
+        let period = rule.period.max(spacing);
+        let missing = (most.max(spacing) * MISSING.0 / MISSING.1).min(period * UNSEEN);
         Self {
             tags,
             columns,
             needed,
             spacing,
-            period: rule.period.max(spacing),
-            silence: (rule.period / LONGEST_SILENCE).max(most.max(spacing) * MISSING.0 / MISSING.1),
+            period,
+            silence: (rule.period / LONGEST_SILENCE).max(missing),
             watched,
             end,
             extent: begin.max(from)..end.min(to),
@@ -194,7 +198,7 @@ impl<'s> Search<'s> {
         let is_independent = |count: &Moment| are_independent(series, stretches, cells(*count), noise);
         let coarsest = finest.min(VALUES[VALUES.len() - 1]);
         let count = counts.into_iter().find(is_independent).unwrap_or(coarsest);
-        (cells(count), limit(FALSE_REJECTIONS, self.watched.len() * count.max(LOOKS) as usize))
+        (cells(count), limit(FALSE_REJECTIONS, self.watched.len() as f64 * count.max(LOOKS) as f64))
     }
 
     /// Where rows are missing. A row holds for the usual time.
@@ -270,7 +274,9 @@ impl<'s> Search<'s> {
                 rejected.close(&mut steady.rejections);
                 steady.periods.push(period);
             } else {
-                drifts.into_iter().for_each(|cause| rejected.add(range.clone(), cause));
+                for cause in drifts {
+                    rejected.add(range.clone(), cause);
+                }
             }
         }
     }

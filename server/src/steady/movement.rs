@@ -58,7 +58,9 @@ pub(super) fn movements(
     limit: f64,
 ) -> Vec<Movement> {
     let Some((first, values)) = values(series, [from, to], cells) else { return Vec::new() };
-    let at = |place: usize| first + place as Moment * cells.width;
+    let at = |place: usize| {
+        Moment::try_from(place).map_or(to, |place| first.saturating_add(place.saturating_mul(cells.width)))
+    };
     let moved =
         |run: &Run| Movement { from: at(run.first).max(from), to: at(run.last + 1).min(to), ratio: run.peak };
     runs_of_movement(&values, noise, limit).iter().map(moved).collect()
@@ -74,11 +76,12 @@ pub(super) fn movements(
 fn values(series: &Series, [from, to]: [Moment; 2], cells: Cells) -> Option<(Moment, Vec<f64>)> {
     let mut good = series.within(from, to).filter(|(_, value)| !value.is_nan()).peekable();
     let first = good.peek()?.0;
-    let begins = first - cells.spacing / 2;
     let mut values = Vec::new();
     let mut held = f64::NAN;
-    for place in 0..((to - first) as u64).div_ceil(cells.width as u64) as Moment {
-        let ends = begins + (place + 1) * cells.width;
+    let mut time = first;
+    while time < to {
+        time = time.saturating_add(cells.width);
+        let ends = time - cells.spacing / 2;
         let (mut sum, mut count) = (0.0, 0.0);
         while let Some((_, value)) = good.next_if(|(time, _)| *time < ends) {
             sum += value;

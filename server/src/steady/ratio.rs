@@ -47,8 +47,8 @@ pub(super) fn quantile(tail: f64) -> f64 {
 /// The limit of R at which values that are all steady are called moved with probability `rate` in so many looks, each at
 /// one value of one tag: the probability of each is `1 - (1 - rate)^(1 / looks)`. Looks that follow one another are
 /// correlated, so that the true rate is lower.
-pub(super) fn limit(rate: f64, looks: usize) -> f64 {
-    quantile(-((-rate).ln_1p() / looks.max(1) as f64).exp_m1())
+pub(super) fn limit(rate: f64, looks: f64) -> f64 {
+    quantile(-((-rate).ln_1p() / looks.max(1.0)).exp_m1())
 }
 
 /// R at each of the values, one after another in time.
@@ -113,10 +113,10 @@ mod tests {
         assert!((quantile((0.05_f64 * 0.025).sqrt()) - 1.5).abs() < 1e-12);
         // Beyond the table the last slope goes on: 3.717 + 0.232 ln 10 / ln 2.5.
         assert!((quantile(1e-7) - 4.300).abs() < 1e-3);
-        assert!((limit(0.05, 1) - 1.438).abs() < 1e-12);
+        assert!((limit(0.05, 1.0) - 1.438).abs() < 1e-12);
         // 1 - 0.95^(1/10) = 0.005116, and 1.860 - 0.132 ln(0.005116 / 0.005) / ln 2 = 1.8556.
-        assert!((limit(0.05, 10) - 1.8556).abs() < 1e-4);
-        assert!(limit(0.05, 1000) > limit(0.05, 100));
+        assert!((limit(0.05, 10.0) - 1.8556).abs() < 1e-4);
+        assert!(limit(0.05, 1000.0) > limit(0.05, 100.0));
     }
 
     #[test]

@@ -17,13 +17,16 @@ const START: Moment = 1_772_344_800_000_000;
 
 /// Tags that each read the flow of a stream, with a standard uncertainty of one.
 fn plant(tags: usize, steady: &str) -> plant::Plant {
-    let mut text = format!("format = 1\n[plant]\nname = \"Invented row of pipes\"\n[steady]\n{steady}\n");
-    for tag in 0..tags {
-        text += &format!("[streams.s{tag}]\nfluid = \"water\"\nto = \"m{tag}.inlet.a\"\n");
-        text += &format!("[streams.t{tag}]\nfluid = \"water\"\nfrom = \"m{tag}.outlet\"\n");
-        text += &format!("[equipment.m{tag}]\nkind = \"mixer\"\n");
-        text += &format!("[tags.F{tag}]\nreads = \"s{tag}.mass_flow\"\nunit = \"t/h\"\nsigma = \"1 t/h\"\n");
-    }
+    let head = format!("format = 1\n[plant]\nname = \"Invented row of pipes\"\n[steady]\n{steady}\n");
+    let pipe = |tag: usize| {
+        format!(
+            "[streams.s{tag}]\nfluid = \"water\"\nto = \"m{tag}.inlet.a\"\n\
+             [streams.t{tag}]\nfluid = \"water\"\nfrom = \"m{tag}.outlet\"\n\
+             [equipment.m{tag}]\nkind = \"mixer\"\n\
+             [tags.F{tag}]\nreads = \"s{tag}.mass_flow\"\nunit = \"t/h\"\nsigma = \"1 t/h\"\n"
+        )
+    };
+    let text: String = std::iter::once(head).chain((0..tags).map(pipe)).collect();
     plant::parse(&text).unwrap()
 }
 
@@ -165,9 +168,8 @@ fn what_is_stored_on_change_is_held_and_is_steady_until_it_changes() {
     let columns = columns(3, MINUTE, 12 * HOUR, |tag, time| {
         let minute = (time - START) / MINUTE;
         match tag {
-            0 if minute == 0 => Sample::Good(100.0),
+            0 | 2 if minute == 0 => Sample::Good(100.0),
             1 if minute % 13 == 0 => Sample::Good(100.0 + (minute % 2) as f64 * 0.5),
-            2 if minute == 0 => Sample::Good(100.0),
             2 if minute == 400 => Sample::Good(130.0),
             _ => Sample::Absent,
         }
@@ -294,4 +296,23 @@ fn only_what_lies_in_the_window_is_looked_at() {
     let nothing = Window { from: Some(instant(START + 100 * HOUR)), to: None };
     let none = find(&tags, &columns, nothing, &SteadyRule::of(&plant));
     assert_eq!((none.periods.len(), none.rejections.len()), (0, 0));
+}
+
+#[test]
+fn times_and_periods_of_any_size_are_gone_through() {
+    let far = |years: i64| START + years * 366 * 24 * HOUR;
+    let rows = vec![START, START + MINUTE, far(100), far(200), far(200) + 1, far(7000)];
+    let mut series = Series::default();
+    for row in &rows {
+        series.push(*row, Sample::Good(100.0));
+    }
+    let columns = Columns { rows, tags: vec![series] };
+    for period in ["1e-9 s", "1 s", "60 min", "1e30 h"] {
+        let steady = found(&plant(1, &format!("period = \"{period}\"")), &columns);
+        assert!(!steady.periods.is_empty() || !steady.rejections.is_empty(), "{period}");
+    }
+    let one = Columns { rows: vec![START], tags: vec![columns.tags[0].clone()] };
+    assert_eq!(found(&plant(1, ""), &one).periods.len(), 1);
+    let none = Columns { rows: Vec::new(), tags: vec![Series::default()] };
+    assert_eq!(found(&plant(1, ""), &none).periods.len(), 0);
 }

@@ -35,6 +35,9 @@ const UNSTATED: f64 = 0.005;
 /// Where the plant file names no tags, readings of less than this share of the largest don't show whether the plant is steady.
 const SMALL: f64 = 0.1;
 
+/// Longer periods, of a thousand years, are cut to it, so that times that are added up can be counted.
+const LONGEST: Moment = 1000 * 366 * 86_400 * 1_000_000;
+
 impl SteadyRule {
     /// The rule of a plant: the tags that `[steady]` names or, where it names none, those that read mass flows and powers;
     /// where there are no such, all that read anything. Laboratory values and counters are watched only where named.
@@ -53,7 +56,7 @@ impl SteadyRule {
         } else {
             chosen(&|tag| named.iter().any(|name| name.value == tag.name.value))
         };
-        let period = ((plant.steady.period * 1e6).round() as Moment).max(1);
+        let period = ((plant.steady.period * 1e6).round() as Moment).clamp(1, LONGEST);
         Self { period, watch, named: !named.is_empty() }
     }
 

@@ -144,6 +144,6 @@ fn headers(text: &mut String, count: usize) {
 pub(crate) fn written<'b>(compiled: &'b CompiledPlant, balance: &'b Balance) -> impl Fn() -> Vec<u8> + 'b {
     let report = JsonReport { plant: "bench", revision: "0", labels: Labels::from(compiled) };
     let (from, to) = (jiff::Timestamp::UNIX_EPOCH, jiff::Timestamp::UNIX_EPOCH);
-    let period = Period { from, to, readings: Vec::new(), warnings: Vec::new() };
+    let period = Period { from, to, readings: Vec::new(), trends: Vec::new(), warnings: Vec::new() };
     move || report.balance(&period, balance)
 }

@@ -438,17 +438,11 @@ fn redundancies_count_the_degrees_of_freedom_whatever_is_missing() {
         state = state.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
         (state >> 33) as f64 / f64::from(1_u32 << 31)
     };
-    let mut converged = 0;
     for seed in 0..100 {
         let row: Vec<Option<Reading>> =
             case.rows[seed % 3].iter().map(|reading| reading.filter(|_| random() > 0.3)).collect();
         let balance = case.compiled.balance(&row, anchor.as_ref());
-        if let Outcome::NotFound { reason } = &balance.outcome {
-            // Then no number is shown, and the reason says what to look at.
-            assert!(balance.quantities.is_empty() && balance.global_test.is_none() && !reason.is_empty());
-            continue;
-        }
-        converged += 1;
+        assert_eq!(balance.outcome, Outcome::Converged, "seed {seed}");
         let test = balance.global_test.unwrap();
         let bounds = balance.warnings.iter().filter(|warning| warning.contains("lies at its bound")).count();
         let sum: f64 = balance.tags.iter().chain(&balance.givens).filter_map(|tag| tag.redundancy).sum();
@@ -465,6 +459,4 @@ fn redundancies_count_the_degrees_of_freedom_whatever_is_missing() {
             assert_eq!(quantity.value.is_some(), quantity.sigma.is_some(), "seed {seed}");
         }
     }
-    // What is missing can leave no state near the readings, or pivots that don't hold: about one in ten at this share.
-    assert!(converged >= 88, "{converged} of 100 balances were found");
 }

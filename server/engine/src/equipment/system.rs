@@ -29,6 +29,20 @@ pub enum VariableRole {
     Other,
 }
 
+impl VariableRole {
+    /// A standard uncertainty beyond this says that a state variable of this value can't be known; infinite for other
+    /// roles.
+    pub fn span(self, value: f64) -> f64 {
+        match self {
+            Self::Pressure => value.abs(),
+            Self::Temperature => 100.0,
+            Self::Enthalpy => 5e5,
+            Self::Ratio => 1.0,
+            Self::MassFlow | Self::Power | Self::Other => f64::INFINITY,
+        }
+    }
+}
+
 /// Whether a variable is known before any meter is read.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Knowledge {

@@ -26,6 +26,16 @@ pub(crate) struct Bounded {
 }
 
 impl Bounded {
+    /// The variable.
+    pub(crate) fn variable(&self) -> u32 {
+        self.variable
+    }
+
+    /// What kind of thing it is.
+    pub(crate) fn role(&self) -> VariableRole {
+        self.role
+    }
+
     /// Those among all variables.
     pub(crate) fn among(variables: &[VariableData]) -> Vec<Self> {
         let capped = |role| is_hard(role) || role == VariableRole::Enthalpy;

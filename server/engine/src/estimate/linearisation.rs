@@ -4,7 +4,7 @@ use std::sync::Arc;
 
 use meterwright_thermo::{Dual, Scalar};
 
-use crate::kkt::{Diagonal, Factor, FactorError, Vectors};
+use crate::kkt::{Diagonal, Factor, FactorError, Pattern, Vectors};
 
 use super::cache::Structure;
 use super::problem::Situation;
@@ -23,6 +23,8 @@ pub struct Linearisation {
     /// Whether nothing determines each variable.
     touched: Vec<bool>,
     degrees_of_freedom: usize,
+    /// What each variable's variance gains by variables that are held though they aren't known; empty without any.
+    doubt: Vec<f64>,
 }
 
 /// Variances of the estimates of all variables, SI squared.
@@ -31,6 +33,17 @@ pub struct Variances {
     pub total: Vec<f64>,
     /// The part that is drawn anew each period; nothing where no observation's repeatability is known.
     pub repeat: Option<Vec<f64>>,
+    /// What comes on top because a state variable that the equations hardly see is held at a guess, which may be wrong
+    /// by all that it can span; empty where nothing is.
+    pub doubt: Vec<f64>,
+}
+
+impl Variances {
+    /// Standard uncertainty of a variable, doubt included.
+    pub fn sigma(&self, variable: u32) -> f64 {
+        let place = variable as usize;
+        (self.total[place] + self.doubt.get(place).copied().unwrap_or(0.0)).sqrt()
+    }
 }
 
 impl Linearisation {
@@ -55,7 +68,7 @@ impl Linearisation {
             touched[variable as usize] = true;
         }
         let repeat_known = situation.observations.iter().any(|observation| observation.repeat.is_some());
-        Ok(Self { structure, factor, repeat_known, touched, degrees_of_freedom })
+        Ok(Self { structure, factor, repeat_known, touched, degrees_of_freedom, doubt: Vec::new() })
     }
 
     /// Degrees of freedom of the balance: observations beyond what they determine.
@@ -87,7 +100,33 @@ impl Linearisation {
             total.push(variance.re.max(0.0));
             repeat.push((-variance.gradient[0]).max(0.0));
         }
-        Ok(Variances { total, repeat: self.repeat_known.then_some(repeat) })
+        Ok(Variances { total, repeat: self.repeat_known.then_some(repeat), doubt: self.doubt.clone() })
+    }
+
+    /// Counts in that a variable is held at a guess which may be wrong by `span`: every other variable then moves by its
+    /// derivative along it.
+    pub(super) fn doubt(
+        &mut self,
+        pattern: &Pattern,
+        values: &[f64],
+        variable: u32,
+        span: f64,
+    ) -> Result<(), FactorError> {
+        let scale = &self.structure.scaling.column;
+        let mut right = Vectors::zeros(&self.structure.analysis);
+        let mut moved = Vectors::zeros(&self.structure.analysis);
+        for (row, slot) in right.rows.iter_mut().enumerate() {
+            let mut entries = values[pattern.range(row)].iter().zip(pattern.row(row));
+            if let Some((value, _)) = entries.find(|(_, column)| **column == variable) {
+                *slot = Dual::constant(-value * span / scale[variable as usize]);
+            }
+        }
+        self.factor.solve(&right, &mut moved)?;
+        self.doubt.resize(scale.len(), 0.0);
+        for ((doubt, change), scale) in self.doubt.iter_mut().zip(&moved.columns).zip(scale) {
+            *doubt += (change.value() * scale).powi(2);
+        }
+        Ok(())
     }
 
     /// How every variable moves with a linear function of the variables: `Z gradient`, SI. The covariance of each

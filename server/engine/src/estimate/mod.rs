@@ -11,6 +11,8 @@ mod evaluation;
 mod failure;
 mod linearisation;
 mod phases;
+#[cfg(test)]
+pub(crate) mod probe;
 mod problem;
 mod scaling;
 mod solve;

@@ -3,7 +3,7 @@
 use std::sync::Arc;
 
 use crate::equation::Form;
-use crate::kkt::{Analysis, Column, Diagonal, Factor, Vectors};
+use crate::kkt::{Analysis, Column, Diagonal, Factor, FactorError, Vectors};
 
 use super::bounds::{ActiveSet, Bounded, Side, blocked, longest};
 use super::cache::{Key, Structure};
@@ -42,6 +42,8 @@ const MOST_PHASE_CHANGES: usize = 5;
 const STEP_TOLERANCE: f64 = 1e-10;
 /// A variable that cuts so many steps in a row short runs away.
 const RUNAWAY: usize = 3;
+/// So many variables that the equations hardly see are held before a search is given up.
+const MOST_HELD: usize = 12;
 /// After a step this large, in sigmas, the factor is made anew.
 const STALE_STEP: f64 = 0.5;
 /// So is it when steps shrink no faster than this.
@@ -161,8 +163,38 @@ impl<'a> Search<'a> {
         }
     }
 
-    /// Rounds of solving and of mending the active set.
+    /// Rounds of solving; where they fail, once more with what the equations hardly see held where the search began.
     fn solve_phase(&mut self) -> Result<Solution, Failure> {
+        let failure = match self.rounds() {
+            Ok(solution) => return Ok(solution),
+            Err(failure) => failure,
+        };
+        self.active = ActiveSet::default();
+        self.x.clone_from(&self.start);
+        if self.hold_the_unseen()? { self.rounds() } else { Err(failure) }
+    }
+
+    /// Holds pressures, temperatures and enthalpies whose uncertainty exceeds what they can span, one after the other, the
+    /// worst first, because the next may be known once that is held. Says whether there was any.
+    fn hold_the_unseen(&mut self) -> Result<bool, Failure> {
+        let before = self.held.len();
+        while self.held.len() < before + MOST_HELD {
+            let structure = self.structure(false)?;
+            let Ok(inverse) = structure.factor.selected_inverse() else { break };
+            let beyond = |bounded: &Bounded| {
+                let j = bounded.variable() as usize;
+                let sigma = inverse.variance(j).sqrt() * structure.scaling.column[j];
+                (sigma / bounded.role().span(self.x[j]), bounded.variable())
+            };
+            let worst = self.problem.bounded.iter().map(beyond).max_by(|a, b| a.0.total_cmp(&b.0));
+            let Some((_, variable)) = worst.filter(|(share, _)| *share > 1.0) else { break };
+            self.held.push(variable);
+        }
+        Ok(self.held.len() > before)
+    }
+
+    /// Rounds of solving and of mending the active set.
+    fn rounds(&mut self) -> Result<Solution, Failure> {
         let mut local = false;
         for round in 0..MOST_ROUNDS {
             let structure = self.structure(local)?;
@@ -495,9 +527,15 @@ impl<'a> Search<'a> {
         };
         let undefined = self.here.undefined.iter().map(|row| self.problem.rows[*row as usize].variables()[0]);
         let unknown = undefined.chain(self.held.iter().copied()).collect();
-        let values = std::mem::take(&mut self.values);
-        Linearisation::new(structure, &values, self.situation, degrees_of_freedom, unknown)
-            .map_err(|error| Failure::Numeric { message: error.to_string() })
+        let numeric = |error: FactorError| Failure::Numeric { message: error.to_string() };
+        let mut linear =
+            Linearisation::new(structure, &self.values, self.situation, degrees_of_freedom, unknown)
+                .map_err(numeric)?;
+        for variable in &self.held {
+            let span = self.problem.roles[*variable as usize].span(self.x[*variable as usize]);
+            linear.doubt(&self.problem.pattern, &self.values, *variable, span).map_err(numeric)?;
+        }
+        Ok(linear)
     }
 
     fn finish(&mut self, linearisation: Linearisation) -> Solution {
@@ -513,7 +551,7 @@ impl<'a> Search<'a> {
 }
 
 /// Which variables the null vectors of an analysis move.
-pub(super) fn undetermined(analysis: &Analysis, variables: usize) -> Vec<bool> {
+pub(crate) fn undetermined(analysis: &Analysis, variables: usize) -> Vec<bool> {
     let mut moved = vec![false; variables];
     for vector in analysis.null_vectors() {
         let largest = vector.parts.iter().map(|(_, part)| part.abs()).fold(0.0, f64::max);

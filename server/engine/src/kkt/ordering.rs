@@ -12,7 +12,10 @@
 //!   `-(h e + c^2)`, again without cancellation. A pair qualifies when the root of that is at least [`THRESHOLD`] times
 //!   either the largest that the variable could have with any of its equations or the largest coefficient of the
 //!   equation (both equilibrated): as in an unsymmetric LU, either bounds the growth within the basis. Pairs that
-//!   fail are delayed simply by not being chosen.
+//!   fail are delayed simply by not being chosen;
+//! - an equation alone, once the uncertainty it has taken over from readings outweighs every coefficient it has left. The
+//!   basis is one of the equations as they stand; when uncertain readings have been eliminated, cancellation can leave an
+//!   equation nothing but rounding of its pair, and the uncertainty is then the sound pivot.
 //!
 //! The next pivot is the one with the smallest front. Zeros that arise stay in the pattern: it must hold for other values.
 
@@ -114,7 +117,8 @@ impl Graph {
         }
         loop {
             while let Some(Reverse((cost, node, stamp))) = self.queue.pop() {
-                if !self.alive[node as usize] || stamp != self.stamp[node as usize] {
+                let stale = !self.alive[node as usize] || stamp != self.stamp[node as usize];
+                if stale || self.role[node as usize] == Role::Partner && !self.stands_alone(node) {
                     continue;
                 }
                 let choice = self.choice(node);
@@ -133,11 +137,17 @@ impl Graph {
     }
 
     fn enqueue(&mut self, node: u32) {
-        if self.role[node as usize] != Role::Partner {
+        if self.role[node as usize] != Role::Partner || self.stands_alone(node) {
             let cost = self.choice(node).cost;
             self.stamp[node as usize] += 1;
             self.queue.push(Reverse((cost, node, self.stamp[node as usize])));
         }
+    }
+
+    /// Whether an equation's own uncertainty outweighs what couples it to variables.
+    fn stands_alone(&self, row: u32) -> bool {
+        let own = -self.bounded_equation(row);
+        self.role[row as usize] == Role::Partner && own > 0.0 && own >= self.largest_in_row(row)
     }
 
     /// The best pivot that a node leads. Its cost is twice the size of its front, one less for a pair, because a pair
@@ -151,7 +161,8 @@ impl Graph {
         if self.role[node as usize] != Role::Lead {
             return alone;
         }
-        let sized = partners.map(|entry| (entry.node, self.strength(node, entry)));
+        let paired = partners.filter(|entry| !self.stands_alone(entry.node));
+        let sized = paired.map(|entry| (entry.node, self.strength(node, entry)));
         let strongest = sized.clone().fold(0.0_f64, |most, (_, strength)| most.max(strength));
         let permitted = sized.filter(|(row, strength)| {
             let enough = |largest: f64| largest > 0.0 && *strength >= THRESHOLD * largest;
@@ -161,11 +172,14 @@ impl Graph {
             let coupled = if self.diagonal[row as usize] == 0.0 { 0 } else { rows.saturating_sub(2) };
             (2 * self.front_of_pair(node, row) + COUPLING * coupled).saturating_sub(1)
         };
-        permitted.map(|(row, _)| (cost(row), row)).min().map_or(alone, |(cost, row)| Choice {
-            cost,
-            partner: Some(row),
-            floor: (COLLAPSE * strongest).powi(2),
-        })
+        let best = permitted.map(|(row, _)| (cost(row), row)).min();
+        let floor = (COLLAPSE * strongest).powi(2);
+        match best {
+            Some((cost, row)) => Choice { cost, partner: Some(row), floor },
+            None if rows == 0 => alone,
+            // Equations that stand alone go first and leave their weight to it.
+            None => Choice { cost: u32::MAX, ..alone },
+        }
     }
 
     /// The largest coefficient of an equation.
@@ -217,8 +231,8 @@ impl Graph {
     /// Takes a node out and gives what it touches.
     fn take_single(&mut self, node: u32) -> Vec<Touched> {
         self.alive[node as usize] = false;
-        let bounded = self.own[node as usize] < 0.0;
-        let pivot = if bounded { self.bounded_equation(node) } else { self.bounded_variable(node) };
+        let equation = self.own[node as usize] < 0.0 || self.role[node as usize] == Role::Partner;
+        let pivot = if equation { self.bounded_equation(node) } else { self.bounded_variable(node) };
         let inverse = if pivot == 0.0 { 0.0 } else { 1.0 / pivot };
         let row = std::mem::take(&mut self.adjacency[node as usize]);
         let touched = row.iter().map(|&Entry { node, value }| Touched {

@@ -1,12 +1,15 @@
 //! The door: a plant compiled once, then one balance for each set of readings.
 
+#[cfg(test)]
+mod tests;
+
 use crate::balance::{
     Balance, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, Reading, TagBalance, TagClass,
     Verdict,
 };
 use crate::compile::{self, Compiled, Exclusion, Instrument, Observed, SoftGiven};
 use crate::equipment::{Machine, VariableRole};
-use crate::estimate::{self, Anchor, Failure, Observation, Problem, Situation, Solution};
+use crate::estimate::{self, Anchor, Failure, Observation, Problem, Situation, Solution, Variances};
 use crate::fault::Fault;
 use crate::kkt::FactorError;
 use crate::plant::Plant;
@@ -182,13 +185,7 @@ impl CompiledPlant {
         let linear = &solution.linearisation;
         let variances = linear.variances()?;
         let limit = self.largest(observations);
-        let told = Told {
-            roles: &self.problem.roles,
-            solution,
-            variances: &variances.total,
-            repeat: variances.repeat.as_deref(),
-            limit,
-        };
+        let told = Told { roles: &self.problem.roles, solution, variances: &variances, limit };
         let (residuals, places) = self.residuals(observations, &told);
         let judged = verdict::judge(&residuals, &self.limits);
         let tags = self.tag_balances(observations, &told, &residuals, &judged, &places);
@@ -366,36 +363,31 @@ struct Largest {
 struct Told<'a> {
     roles: &'a [VariableRole],
     solution: &'a Solution,
-    variances: &'a [f64],
-    repeat: Option<&'a [f64]>,
+    variances: &'a Variances,
     limit: Largest,
 }
 
 impl Told<'_> {
     fn residual(&self, variable: u32, value: f64, sigma: f64) -> Residual {
         let place = variable as usize;
-        Residual { deviation: value - self.solution.x[place], sigma, variance: self.variances[place] }
+        Residual { deviation: value - self.solution.x[place], sigma, variance: self.variances.total[place] }
     }
 
     /// Value and standard uncertainty of a variable, if it can be known.
     fn known(&self, variable: u32) -> Option<(f64, f64)> {
         let place = variable as usize;
-        let (value, sigma) = (self.solution.x[place], self.variances[place].sqrt());
+        let (value, sigma) = (self.solution.x[place], self.variances.sigma(variable));
         let span = match self.roles[place] {
-            VariableRole::Pressure => value.abs(),
-            VariableRole::Temperature => 100.0,
-            VariableRole::Enthalpy => 5e5,
-            VariableRole::Ratio => 1.0,
             VariableRole::MassFlow if self.limit.mass_flow > 0.0 => self.limit.mass_flow,
             VariableRole::Power if self.limit.power > 0.0 => self.limit.power,
-            _ => f64::INFINITY,
+            role => role.span(value),
         };
         let determined = !self.solution.linearisation.touched()[place];
         (determined && sigma <= span && value.is_finite()).then_some((value, sigma))
     }
 
     fn repeat_sigma(&self, variable: u32) -> Option<f64> {
-        self.repeat.map(|repeat| repeat[variable as usize].sqrt())
+        self.variances.repeat.as_ref().map(|repeat| repeat[variable as usize].sqrt())
     }
 
     /// A live tag or given; `reads` is the variable it speaks of and variable minus reading.
@@ -409,7 +401,7 @@ impl Told<'_> {
         judged: &Judged,
     ) -> TagBalance {
         let sigma = observed.sigma.hypot(shared);
-        let variance = reads.map_or(residual.variance, |(base, _)| self.variances[base as usize]);
+        let variance = reads.map_or(residual.variance, |(base, _)| self.variances.total[base as usize]);
         let reconciled = reads.map_or(observed.value, |(base, shift)| self.solution.x[base as usize] - shift);
         let redundancy =
             if shared > 0.0 { (1.0 - variance / (sigma * sigma)).clamp(0.0, 1.0) } else { judged.redundancy };
@@ -418,7 +410,9 @@ impl Told<'_> {
             sigma: Some(sigma),
             samples,
             reconciled: Some(reconciled),
-            reconciled_sigma: Some(variance.sqrt()),
+            reconciled_sigma: Some(
+                reads.map_or(residual.variance.sqrt(), |(base, _)| self.variances.sigma(base)),
+            ),
             correction: Some(reconciled - observed.value),
             redundancy: Some(redundancy),
             statistic: judged.statistic,
@@ -434,7 +428,7 @@ impl Told<'_> {
         TagBalance {
             samples,
             reconciled: known.map(|(base, shift)| self.solution.x[base as usize] - shift),
-            reconciled_sigma: known.map(|(base, _)| self.variances[base as usize].sqrt()),
+            reconciled_sigma: known.map(|(base, _)| self.variances.sigma(base)),
             ..NOTHING
         }
     }

@@ -9,6 +9,8 @@ mod shaft;
 
 pub(crate) use instrument::{Exclusion, Instrument, Observed, SoftGiven};
 
+use std::collections::HashMap;
+
 use crate::balance::Label;
 use crate::equation::RowRole;
 use crate::equipment::{Knowledge, Machine, System, VariableData, VariableRole};
@@ -37,6 +39,8 @@ pub(crate) fn compile(plant: &Plant) -> Result<Compiled, Vec<Fault>> {
     let mut faults = Vec::new();
     let network = network::connect(plant, &mut faults);
     if !faults.is_empty() {
+        // What a name stands for can't be asked of machines that aren't connected; whether it stands for anything can.
+        quantities::check_owners(plant, &mut faults);
         return Err(in_order(faults));
     }
     let mut system = System::over(network.streams);
@@ -122,12 +126,13 @@ fn listed(plant: &Plant, system: &System, touched: &[u32]) -> Vec<(Label, u32)> 
             (Label { name: variable.name.clone(), quantity: None, unit }, id as u32)
         })
         .collect();
+    let places: HashMap<&str, usize> =
+        plant.streams.iter().enumerate().map(|(place, stream)| (stream.name.value.as_str(), place)).collect();
     let rank = |label: &Label| {
         let owner = label.name.split('.').next().unwrap_or_default();
-        let stream = plant.streams.iter().position(|stream| stream.name.value == owner);
-        stream.unwrap_or(usize::MAX)
+        places.get(owner).copied().unwrap_or(usize::MAX)
     };
-    quantities.sort_by_key(|(label, id)| (rank(label), *id));
+    quantities.sort_by_cached_key(|(label, id)| (rank(label), *id));
     quantities
 }
 

@@ -51,6 +51,8 @@ pub(super) struct Naming<'p> {
     silent_tags: HashSet<&'p str>,
     reading_tags: HashSet<&'p str>,
     in_progress: Vec<&'p str>,
+    /// Whatever may stand before a dot in a formula.
+    owners: HashSet<&'p str>,
     system: System,
 }
 
@@ -73,6 +75,7 @@ impl<'p> Naming<'p> {
             silent_tags: tags(false),
             reading_tags: tags(true),
             in_progress: Vec::new(),
+            owners: owners(plant),
             system,
         }
     }
@@ -111,8 +114,7 @@ impl<'p> Naming<'p> {
             let found = self.system.find(name);
             return found.ok_or_else(|| format!("shaft `{owner}` has the quantity `loss` only"));
         }
-        let owners = self.streams.keys().chain(self.machines.keys()).chain(&self.shafts).copied();
-        Err(format!("`{owner}` is no stream, equipment or shaft{}", suggestion(owner, owners)))
+        Err(unknown_owner(owner, network_names(self.plant)))
     }
 
     /// A name without a dot: an indicator, or a tag that reads nothing.
@@ -274,8 +276,7 @@ impl<'p> Naming<'p> {
             start: (text.span.start + from).min(text.span.end),
             end: (text.span.start + to).min(text.span.end),
         };
-        let known: HashSet<&str> = self.owners();
-        let is_known = |name: &str| known.contains(name.split('.').next().unwrap_or(name));
+        let is_known = |name: &str| self.owners.contains(name.split('.').next().unwrap_or(name));
         let formula = Formula::parse(&text.value, &is_known)
             .map_err(|error| Fault { span: place(error.start, error.end), message: error.message })?;
         let mut of = Vec::new();
@@ -294,13 +295,39 @@ impl<'p> Naming<'p> {
         self.system.variables[id as usize].listed = false;
         Ok(id)
     }
+}
 
-    fn owners(&self) -> HashSet<&'p str> {
-        let tags = self.silent_tags.iter().chain(&self.reading_tags).copied();
-        let indicators = self.indicators.keys().copied();
-        let network = self.streams.keys().chain(self.machines.keys()).chain(&self.shafts).copied();
-        network.chain(indicators).chain(tags).chain(["surroundings"]).collect()
+/// All names that a formula may begin a reference with.
+fn owners(plant: &Plant) -> HashSet<&str> {
+    let names = network_names(plant);
+    let indicators = plant.indicators.iter().map(|indicator| &indicator.name);
+    let tags = plant.tags.iter().map(|tag| &tag.name);
+    let others = indicators.chain(tags).map(|name| name.value.as_str());
+    names.chain(others).chain(["surroundings"]).collect()
+}
+
+/// Names of streams, equipment and shafts.
+fn network_names(plant: &Plant) -> impl Iterator<Item = &str> + Clone {
+    let streams = plant.streams.iter().map(|stream| &stream.name);
+    let equipment = plant.equipment.iter().map(|equipment| &equipment.name);
+    let shafts = plant.shafts.iter().map(|shaft| &shaft.name);
+    streams.chain(equipment).chain(shafts).map(|name| name.value.as_str())
+}
+
+/// Tags and givens whose name begins with nothing that the plant has.
+pub(super) fn check_owners(plant: &Plant, faults: &mut Vec<Fault>) {
+    let known = owners(plant);
+    let read = plant.tags.iter().filter_map(|tag| tag.reads.as_ref());
+    for name in read.chain(plant.givens.iter().map(|given| &given.quantity)) {
+        let owner = name.value.split('.').next().unwrap_or_default();
+        if name.value.contains('.') && !known.contains(owner) {
+            faults.push(Fault { span: name.span, message: unknown_owner(owner, network_names(plant)) });
+        }
     }
+}
+
+fn unknown_owner<'a>(owner: &str, names: impl Iterator<Item = &'a str>) -> String {
+    format!("`{owner}` is no stream, equipment or shaft{}", suggestion(owner, names))
 }
 
 fn unknown_quantity<'a>(

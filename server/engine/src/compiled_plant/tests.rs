@@ -190,3 +190,30 @@ fn starts_along_unobservable_directions_change_nothing_else() {
         }
     }
 }
+
+#[test]
+fn a_wrong_connection_hides_no_wrong_name() {
+    let text = r#"format = 1
+[plant]
+name = "invented"
+[streams.feed]
+fluid = "water"
+to = "splitter.inlet"
+[streams.a]
+fluid = "water"
+from = "splitter.outlett.a"
+[equipment.splitter]
+kind = "splitter"
+[tags.FT-1]
+reads = "fed.mass_flow"
+unit = "kg/s"
+sigma = "1 %"
+[given]
+"spliter.heat_loss" = "0 kW"
+"#;
+    let faults = CompiledPlant::compile(&parse(text).unwrap()).err().unwrap();
+    let told: Vec<&str> = faults.iter().map(|fault| fault.message.as_str()).collect();
+    for part in ["outlett", "did you mean `feed`", "did you mean `splitter`"] {
+        assert!(told.iter().any(|message| message.contains(part)), "{part} is missing from {told:?}");
+    }
+}

@@ -31,8 +31,8 @@ const FALSE_REJECTIONS: f64 = 0.05;
 /// So many values a period may R see of a tag: the means of finer samples. The first that a log's spacing allows is taken
 /// at which neighbouring values of the tag are independent; the last where none is.
 const VALUES: [Moment; 5] = [60, 30, 20, 12, 6];
-/// A false movement takes in about so many values, the ten that the filters remember to each of its sides: it can come out
-/// of as many looks at each tag, however few values a period has.
+/// A false movement takes in up to ten values, as many as the filters remember, on either side: it can come out of as many
+/// looks at each tag, however few values a period has.
 const LOOKS: Moment = 20;
 /// A tag may have no good sample, and a log no rows, for this share of a period.
 const LONGEST_SILENCE: Moment = 6;
@@ -198,7 +198,9 @@ impl<'s> Search<'s> {
         let is_independent = |count: &Moment| are_independent(series, stretches, cells(*count), noise);
         let coarsest = finest.min(VALUES[VALUES.len() - 1]);
         let count = counts.into_iter().find(is_independent).unwrap_or(coarsest);
-        (cells(count), limit(FALSE_REJECTIONS, self.watched.len() as f64 * count.max(LOOKS) as f64))
+        // Each value is looked at from both sides.
+        let looks = 2.0 * self.watched.len() as f64 * count.max(LOOKS) as f64;
+        (cells(count), limit(FALSE_REJECTIONS, looks))
     }
 
     /// Where rows are missing. A row holds for the usual time.

@@ -1,6 +1,6 @@
 //! When a tag moved: the statistic R run forwards and backwards over its values at even times.
 
-use super::ratio::{MEMORY, ratios};
+use super::ratio::{Filter, MEMORY};
 use crate::series::{Moment, Series};
 
 /// How values are taken at even times.
@@ -25,7 +25,7 @@ pub(super) struct Movement {
 }
 
 /// Whether neighbouring values are independent while the tag is steady, as R takes them to be. `noise` is that of
-/// [`ratios`].
+/// [`Filter`].
 ///
 /// In blocks of ten values the variance about the mean is compared with that of the differences, as R does but without its
 /// memory (J. von Neumann, Annals of Mathematical Statistics 12 (1941) 367-395, from memory). The median of the blocks
@@ -49,7 +49,7 @@ pub(super) fn are_independent(series: &Series, stretches: &[[Moment; 2]], cells:
     ratios.is_empty() || *ratios.select_nth_unstable_by(middle, f64::total_cmp).1 <= allowed
 }
 
-/// When a tag moved between two moments without a gap in the log. `noise` is that of [`ratios`].
+/// When a tag moved between two moments without a gap in the log. `noise` is that of [`Filter`].
 pub(super) fn movements(
     series: &Series,
     [from, to]: [Moment; 2],
@@ -103,47 +103,73 @@ struct Run {
     peak: f64,
 }
 
-/// Where R says, seen from both sides, that the values moved.
+/// Where R, seen from both sides, says that the values moved.
 ///
-/// R rises within a few values of where a movement begins, but takes long to fall when it is over; run backwards in time it
-/// does so at the movement's end. What both runs call moved is the movement itself, with neither the delay nor the
-/// long memory. A step is moved at its two sides.
+/// R exceeds its limit within a few values of where a movement begins; run backwards in time, of where it ends. It then
+/// starts anew, as it would else take long to forget, and exceeds its limit again if the movement goes on. Each excess
+/// speaks of the values since R was last steady, but not of those beyond an excess of the other direction, since a
+/// step is seen just after it by the one and just before it by the other. What little lies between two movements is one too.
 fn runs_of_movement(values: &[f64], noise: f64, limit: f64) -> Vec<Run> {
-    let forwards = runs(&ratios(values.iter().copied(), noise), limit);
+    let forwards = excesses(values, noise, limit);
+    let reversed: Vec<f64> = values.iter().rev().copied().collect();
     let end = values.len().saturating_sub(1);
-    let mut backwards = runs(&ratios(values.iter().rev().copied(), noise), limit);
-    backwards.reverse();
-    for run in &mut backwards {
-        (run.first, run.last) = (end - run.last, end - run.first);
+    let backwards: Vec<Excess> = excesses(&reversed, noise, limit)
+        .iter()
+        .rev()
+        .map(|excess| Excess { since: end - excess.since, place: end - excess.place, ratio: excess.ratio })
+        .collect();
+    let mut runs: Vec<Run> = Vec::with_capacity(forwards.len() + backwards.len());
+    for Excess { since, place, ratio } in &forwards {
+        let seen = backwards.partition_point(|other| other.place < *since);
+        let first = backwards.get(seen).map(|other| other.place).filter(|other| other <= place);
+        runs.push(Run { first: first.unwrap_or(*since), last: *place, peak: *ratio });
     }
-    let mut both = Vec::new();
-    for run in &forwards {
-        for other in backwards.iter().filter(|other| other.first <= run.last && run.first <= other.last) {
-            both.push(Run {
-                first: run.first.max(other.first),
-                last: run.last.min(other.last),
-                peak: run.peak.max(other.peak),
-            });
+    for Excess { since, place, ratio } in &backwards {
+        let seen = forwards.partition_point(|other| other.place <= *since).checked_sub(1);
+        let last = seen.map(|seen| forwards[seen].place).filter(|other| other >= place);
+        runs.push(Run { first: *place, last: last.unwrap_or(*since), peak: *ratio });
+    }
+    runs.sort_unstable_by_key(|run| run.first);
+    let mut joined: Vec<Run> = Vec::new();
+    for run in runs {
+        match joined.last_mut() {
+            Some(last) if run.first <= last.last + BETWEEN => {
+                last.last = last.last.max(run.last);
+                last.peak = last.peak.max(run.peak);
+            }
+            _ => joined.push(run),
         }
     }
-    both
+    joined
 }
 
-/// The stretches in which R exceeds the limit, each with what comes before it since R was last at or below 1, its value at
-/// steady state, but with no more than R remembers; and one value more, from which the first step was made.
-fn runs(ratios: &[f64], limit: f64) -> Vec<Run> {
-    let mut runs = Vec::new();
-    let mut place = 0;
-    while place < ratios.len() {
-        let length = ratios[place..].iter().take_while(|ratio| **ratio > 1.0).count();
-        let above = &ratios[place..place + length];
-        let exceeds = |ratio: &f64| *ratio > limit;
-        if let (Some(first), Some(last)) = (above.iter().position(exceeds), above.iter().rposition(exceeds)) {
-            let peak = above.iter().copied().fold(0.0, f64::max);
-            let first = place.max((place + first).saturating_sub(MEMORY)).saturating_sub(1);
-            runs.push(Run { first, last: place + last, peak });
+/// So few values between two movements don't show that the tag was steady.
+const BETWEEN: usize = 2;
+
+/// R beyond its limit.
+#[derive(Clone, Copy, Debug, PartialEq)]
+struct Excess {
+    /// Place of the last value at which R was at or below 1, its value at steady state, but no further away than R remembers.
+    since: usize,
+    /// Place of the value at which R exceeds its limit.
+    place: usize,
+    ratio: f64,
+}
+
+/// The places at which R exceeds its limit; after each it starts anew.
+fn excesses(values: &[f64], noise: f64, limit: f64) -> Vec<Excess> {
+    let mut excesses = Vec::new();
+    let mut filter = Filter::begin(values, noise);
+    let mut since = 0;
+    for (place, value) in values.iter().enumerate().skip(1) {
+        let ratio = filter.ratio(*value);
+        if ratio > limit {
+            excesses.push(Excess { since: since.max(place.saturating_sub(MEMORY)), place, ratio });
+            filter = Filter::begin(&values[place..], noise);
         }
-        place += length.max(1);
+        if ratio <= 1.0 || ratio > limit {
+            since = place;
+        }
     }
-    runs
+    excesses
 }

@@ -51,30 +51,44 @@ pub(super) fn limit(rate: f64, looks: f64) -> f64 {
     quantile(-((-rate).ln_1p() / looks.max(1.0)).exp_m1())
 }
 
-/// R at each of the values, one after another in time.
+/// The three filters of R.
 ///
 /// `noise` is a standard deviation that the values are taken to have besides what they show. It adds `2 noise^2` to both
 /// estimates of the variance, as independent noise would on average, and so leaves R at 1 for a value that is
 /// constant or is stored in steps well below it, and unchanged where the value's own noise is well above it.
-pub(super) fn ratios(values: impl Iterator<Item = f64> + Clone, noise: f64) -> Vec<f64> {
-    let floor = 2.0 * noise * noise;
-    let Some(first) = values.clone().next() else { return Vec::new() };
-    let neighbours = values.clone().zip(values.clone().skip(1));
-    let squares: Vec<f64> = neighbours.take(MEMORY).map(|(a, b)| (b - a).powi(2)).collect();
-    // At the beginning, as far as the filters remember, the state is taken to be steady with the scatter of the first differences.
-    let mut differences = squares.iter().sum::<f64>() / squares.len().max(1) as f64;
-    let mut scatter = differences / (2.0 - MEAN);
-    let (mut mean, mut previous) = (first, first);
-    let mut ratios = vec![1.0];
-    ratios.extend(values.skip(1).map(|value| {
-        scatter += SCATTER * ((value - mean).powi(2) - scatter);
-        differences += DIFFERENCES * ((value - previous).powi(2) - differences);
-        mean += MEAN * (value - mean);
-        previous = value;
-        let below = differences + floor;
-        if below > 0.0 { ((2.0 - MEAN) * scatter + floor) / below } else { 1.0 }
-    }));
-    ratios
+pub(super) struct Filter {
+    mean: f64,
+    scatter: f64,
+    differences: f64,
+    previous: f64,
+    floor: f64,
+}
+
+impl Filter {
+    /// Begins at the first of the values, taken to be steady with the scatter of the differences that follow as far as the
+    /// filters remember, without the largest of these, which may be a movement.
+    pub(super) fn begin(values: &[f64], noise: f64) -> Self {
+        let neighbours = values.windows(2).take(MEMORY);
+        let mut squares: Vec<f64> = neighbours.map(|pair| (pair[1] - pair[0]).powi(2)).collect();
+        if squares.len() > 2 {
+            squares.sort_unstable_by(f64::total_cmp);
+            squares.pop();
+        }
+        let differences = squares.iter().sum::<f64>() / squares.len().max(1) as f64;
+        let first = values.first().copied().unwrap_or_default();
+        let scatter = differences / (2.0 - MEAN);
+        Self { mean: first, scatter, differences, previous: first, floor: 2.0 * noise * noise }
+    }
+
+    /// R at the next value.
+    pub(super) fn ratio(&mut self, value: f64) -> f64 {
+        self.scatter += SCATTER * ((value - self.mean).powi(2) - self.scatter);
+        self.differences += DIFFERENCES * ((value - self.previous).powi(2) - self.differences);
+        self.mean += MEAN * (value - self.mean);
+        self.previous = value;
+        let below = self.differences + self.floor;
+        if below > 0.0 { ((2.0 - MEAN) * self.scatter + self.floor) / below } else { 1.0 }
+    }
 }
 
 #[cfg(test)]
@@ -82,13 +96,19 @@ mod tests {
     use super::super::noise::Noise;
     use super::*;
 
+    /// R at every value after the first.
+    fn ratios(values: &[f64], noise: f64) -> Vec<f64> {
+        let mut filter = Filter::begin(values, noise);
+        values.iter().skip(1).map(|value| filter.ratio(*value)).collect()
+    }
+
     #[test]
     fn steady_noise_exceeds_the_published_quantiles_as_often_as_it_should() {
         // Neighbouring ratios are correlated over about ten values, so a share p of n has the standard error sqrt(p / (n / 10))
         // or less: four of them are allowed.
         let mut noise = Noise::new(1);
         let values: Vec<f64> = (0..1_000_000).map(|_| noise.draw()).collect();
-        let ratios = ratios(values.iter().copied(), 0.0);
+        let ratios = ratios(&values, 0.0);
         for (tail, limit) in [
             (0.5, 1.000),
             (0.1, 1.314),
@@ -121,23 +141,24 @@ mod tests {
 
     #[test]
     fn a_constant_value_is_steady_with_and_without_a_noise_that_it_is_taken_to_have() {
-        assert_eq!(ratios([7.0; 50].into_iter(), 0.0), [1.0; 50]);
-        assert_eq!(ratios([7.0; 50].into_iter(), 0.1), [1.0; 50]);
-        assert_eq!(ratios(std::iter::empty(), 0.1), [0.0; 0]);
-        assert_eq!(ratios([7.0].into_iter(), 0.1), [1.0]);
+        assert_eq!(ratios(&[7.0; 50], 0.0), [1.0; 49]);
+        assert_eq!(ratios(&[7.0; 50], 0.1), [1.0; 49]);
+        assert_eq!(ratios(&[], 0.1), [0.0; 0]);
+        assert_eq!(Filter::begin(&[], 0.0).ratio(0.0), 1.0);
     }
 
     #[test]
     fn a_long_ramp_has_the_ratio_of_a_ramp() {
         // The filtered mean lags a ramp of one a value by 1 / 0.2 = 5: R = 1.8 * 5^2 / 1.
-        let last = *ratios((0..500).map(f64::from), 0.0).last().unwrap();
+        let ramp: Vec<f64> = (0..500).map(f64::from).collect();
+        let last = ratios(&ramp, 0.0)[498];
         assert!((last - 45.0).abs() < 1e-9, "{last}");
     }
 
     #[test]
     fn a_step_well_below_the_noise_is_no_movement() {
-        let step = |size: f64| (0..100).map(move |place| if place < 50 { 0.0 } else { size });
-        let largest = |size| ratios(step(size), 1.0).into_iter().fold(0.0, f64::max);
+        let step = |size: f64| [[0.0; 50], [size; 50]].concat();
+        let largest = |size| ratios(&step(size), 1.0).into_iter().fold(0.0, f64::max);
         assert!(largest(1.0) < 1.2, "{}", largest(1.0));
         assert!(largest(10.0) > 3.0, "{}", largest(10.0));
     }

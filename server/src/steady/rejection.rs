@@ -104,24 +104,28 @@ impl Rejection {
         self.reasons = settled;
     }
 
-    /// A line for people, with times in a zone.
+    /// A line for people, with times in a zone; times of the day on which the stretch begins need no date.
     pub fn told(&self, zone: &TimeZone) -> String {
-        let local = |time: Timestamp| {
-            time.to_zoned_datetime(zone.clone()).strftime("%Y-%m-%d %H:%M:%S %:z").to_string()
+        let local = |time: Timestamp| time.to_zoned_datetime(zone.clone());
+        let whole = |time| local(time).strftime("%Y-%m-%d %H:%M:%S %:z").to_string();
+        let day = local(self.from).date();
+        let short = |time| match local(time) {
+            time if time.date() == day => time.strftime("%H:%M:%S").to_string(),
+            time => time.strftime("%Y-%m-%d %H:%M:%S").to_string(),
         };
         let reason = |reason: &Reason| {
             let words = reason.cause.to_string();
             if (reason.from, reason.to) == (self.from, self.to) {
                 words
             } else {
-                format!("{words} from {} to {}", local(reason.from), local(reason.to))
+                format!("{words} from {} to {}", short(reason.from), short(reason.to))
             }
         };
         let mut reasons: Vec<String> = self.reasons.iter().take(TOLD).map(reason).collect();
         if let Some(more @ 1..) = self.reasons.len().checked_sub(TOLD) {
             reasons.push(format!("and {more} reasons more"));
         }
-        format!("{} to {} is no steady period: {}", local(self.from), local(self.to), reasons.join("; "))
+        format!("{} to {} is no steady period: {}", whole(self.from), whole(self.to), reasons.join("; "))
     }
 }
 

@@ -129,8 +129,9 @@ fn a_step_is_found_where_it_is_and_both_its_sides_are_balanced() {
 
 #[test]
 fn a_ramp_is_left_out_from_its_beginning_to_its_end() {
-    // Two hours of a ramp, fast or slow beside the noise; what is missed of it moves a mean by less than two sigmas.
-    for (rate, tolerance) in [(120.0, 5.0), (30.0, 10.0), (4.0, 60.0)] {
+    // Two hours of a ramp, fast or slow beside the noise. What may be missed at its ends moves the mean of an hour by one
+    // sigma: a quarter of an hour at 30 an hour by 15 / 60 * 7.5 / 2.
+    for (rate, tolerance) in [(120.0, 5.0), (30.0, 15.0), (4.0, 60.0)] {
         for seed in 0..10 {
             let ramp = |time: Moment| {
                 rate * seconds(START + 10 * HOUR, time.clamp(START + 10 * HOUR, START + 12 * HOUR)) / 3600.0
@@ -141,6 +142,22 @@ fn a_ramp_is_left_out_from_its_beginning_to_its_end() {
             assert!(from < 600.0 + tolerance && to > 720.0 - tolerance, "{rate} an hour: {from} to {to}");
             assert!(from > 600.0 - 61.0 && to < 720.0 + 61.0, "{rate} an hour: {from} to {to}");
         }
+    }
+}
+
+#[test]
+fn hours_between_two_loads_a_day_are_balanced() {
+    // Hourly averages of a plant that runs at one load from 7 to 22 and at another from 23 to 6, and in between between.
+    let load = |time: Moment| match time / HOUR % 24 {
+        6 | 22 => 80.0,
+        7..22 => 100.0,
+        _ => 60.0,
+    };
+    let steady = found(&plant(4, ""), &columns(4, HOUR, 30 * 24 * HOUR, noisy(4, 1.0, |_, time| load(time))));
+    assert!(steady.periods.len() > 24 * 30 * 6 / 10, "{} of 720", steady.periods.len());
+    for period in &steady.periods {
+        let hour = crate::series::moment(period.from) / HOUR % 24;
+        assert!(hour != 6 && hour != 22, "{hour}");
     }
 }
 
@@ -176,7 +193,8 @@ fn what_is_stored_on_change_is_held_and_is_steady_until_it_changes() {
     });
     let steady = found(&plant(3, ""), &columns);
     let [(from, to)] = rejected(&steady)[..] else { panic!("{:?}", steady.rejections) };
-    assert!(from <= 400.0 && to >= 400.0 && to - from < 60.0, "{from} to {to}");
+    // What R sees are means of a quarter of an hour, as long as the samples usually are apart: two on either side.
+    assert_eq!((from, to), (375.0, 435.0));
     let last = steady.periods.last().unwrap();
     let means: Vec<f64> = last.readings.iter().map(|reading| reading.unwrap().mean).collect();
     assert_eq!((means[0], means[2]), (100.0, 130.0));

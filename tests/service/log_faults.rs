@@ -46,6 +46,20 @@ fn two_rows_at_one_time_are_a_fault_wherever_they_stand() {
 }
 
 #[test]
+fn a_long_log_in_any_order_is_told_all_its_faults_at_once() {
+    let in_order = "time,tag,value\n\
+                    2026-03-01T06:00:00Z,FT-1,1\n\
+                    2026-03-01T06:00:00Z,FT-1,2\n\
+                    2026-03-01T06:01:00Z,TT-2,hot\n\
+                    2026-03-01T06:02:00Z,TT-2,500\n";
+    let told = ["3:1: FT-1 has a sample at this time already, in line 2", "4:3: TT-2: `hot` is not a number"];
+    assert_eq!(faults(in_order), told);
+    let tag_after_tag = in_order.to_owned() + "2026-03-01T06:01:00Z,FT-1,1\n2026-03-01T06:02:00Z,TT-2,500\n";
+    let again = "7:1: TT-2 has a sample at this time already, in line 5";
+    assert_eq!(faults(tag_after_tag), [&told[..], &[again]].concat());
+}
+
+#[test]
 fn units_that_contradict_the_plant_file_are_faults_that_name_both() {
     let log = "time,FT-1,TT-2\n,kg/s,degC\n2026-03-01T06:00:00Z,41,520\n";
     assert_eq!(

@@ -105,6 +105,30 @@ fn long_logs_are_put_in_order_of_time_and_their_qualities_heard() {
 }
 
 #[test]
+fn a_long_log_says_the_same_in_any_order() {
+    let samples = |minute: usize| {
+        [
+            format!("2026-03-01T06:{minute:02}:00Z,FT-1,{minute}"),
+            format!("2026-03-01T06:{minute:02}:00Z,TT-2,{minute}"),
+        ]
+    };
+    let in_order: Vec<String> = (0..60).flat_map(samples).collect();
+    let mut tag_after_tag = in_order.clone();
+    tag_after_tag.sort_by_key(|row| row.contains("TT-2"));
+    let newest_first = in_order.iter().rev().cloned();
+    let read = |rows: &mut dyn Iterator<Item = String>| rows_with_times(&lines("time,tag,value", rows));
+    let expected = read(&mut in_order.clone().into_iter());
+    assert_eq!(expected.len(), 60);
+    assert_eq!(expected[7].1, good(7.0, 7.0));
+    assert_eq!(read(&mut tag_after_tag.into_iter()), expected);
+    assert_eq!(read(&mut newest_first.into_iter()), expected);
+}
+
+fn rows_with_times(content: &str) -> Vec<(jiff::Timestamp, Vec<Sample>)> {
+    rows(content).into_iter().map(|row| (row.time, row.samples)).collect()
+}
+
+#[test]
 fn what_no_tag_knows_is_listed_and_so_are_tags_without_samples() {
     assert_eq!(
         notes("time,FT-1,FT-l,remark,\n2026-03-01T06:00:00Z,1,2,x,\n"),

@@ -1,7 +1,8 @@
 //! Meterwright's service: everything that touches the world. The balance itself lives in `meterwright-engine`.
 //!
-//! Floors, from the ground: [`log`] reads files of samples; [`period`] makes of them one reading a tag and period;
-//! [`report`] puts balances into words; [`command`] is the command line.
+//! Floors, from the ground: [`log`] reads files of samples; [`period`] makes of them one reading a tag and period, and
+//! [`steady`] finds the periods that can be balanced; [`report`] puts balances into words; [`command`] is the command
+//! line.
 
 mod average;
 pub mod command;

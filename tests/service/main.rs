@@ -6,5 +6,6 @@ mod log_faults;
 mod log_forms;
 mod period_means;
 mod steady_periods;
+#[cfg(target_os = "linux")]
 mod streams;
 mod times;

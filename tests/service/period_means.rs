@@ -142,3 +142,19 @@ fn a_reading_outside_its_span_is_told_in_its_row() {
     assert_eq!(periods[0].readings[0], None);
     assert_eq!(periods[0].warnings, ["FT-1: 107 t/h lies outside its span of 0 to 100 t/h and is not used"]);
 }
+
+#[test]
+fn a_period_knows_how_its_tags_moved() {
+    // FT-1 at 0, 1, 2, 3 min: 1, 3, 2, 4. Slope 0.8 a minute; residuals -0.3, 0.9, -0.9, 0.3 with squares 1.8 and no positive
+    // correlation; error sqrt(1.8 / 2 / 5) a minute. TT-2 doesn't move; the laboratory value is there once.
+    let period = whole(
+        "time,FT-1,TT-2,AT-3\n2026-03-01T06:00:00Z,1,500,80\n2026-03-01T06:01:00Z,3,500,\n\
+         2026-03-01T06:02:00Z,2,500,\n2026-03-01T06:03:00Z,4,500,\n",
+    );
+    let [flow, temperature, laboratory] = period.trends[..] else { panic!("{:?}", period.trends) };
+    let flow = flow.unwrap();
+    assert!((flow.slope * 60.0 - 0.8).abs() < 1e-12, "{flow:?}");
+    assert!((flow.standard_error * 60.0 - 0.18_f64.sqrt()).abs() < 1e-12, "{flow:?}");
+    assert_eq!(temperature.map(|trend| (trend.slope, trend.standard_error)), Some((0.0, 0.0)));
+    assert_eq!(laboratory, None);
+}

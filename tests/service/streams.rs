@@ -40,7 +40,6 @@ fn resident(process: u32) -> Option<u64> {
     line.split_whitespace().nth(1)?.parse().ok()
 }
 
-#[cfg(target_os = "linux")]
 #[test]
 fn rows_are_handed_on_as_they_are_read_and_written_as_they_finish() {
     for form in ["wide", "long"] {

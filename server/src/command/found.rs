@@ -61,7 +61,7 @@ impl<'l> Found<'l> {
 
     /// What is rejected before a period is told with it, and what is rejected at the end with the last.
     fn steady(steady: Steady, plant: &Plant, zone: &TimeZone) -> Self {
-        let Steady { mut periods, rejections, watched, silent } = steady;
+        let Steady { mut periods, length, rejections, watched, silent } = steady;
         for rejection in &rejections {
             let next = periods.partition_point(|period| period.from < rejection.to);
             let place = next.min(periods.len().saturating_sub(1));
@@ -81,7 +81,7 @@ impl<'l> Found<'l> {
             count: Some(periods.len()),
             rejections: rejections.iter().map(|rejection| rejection.told(zone)).collect(),
             summary: (!periods.is_empty() || !rejections.is_empty())
-                .then(|| summary(periods.len(), rejections.len(), plant.steady.period, &watched)),
+                .then(|| summary(periods.len(), rejections.len(), length, &watched)),
             silent: silent.collect(),
             periods: Box::new(periods.into_iter().map(Ok)),
         }

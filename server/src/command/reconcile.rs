@@ -86,54 +86,79 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     if !arguments.no_search {
         return Err(Stop::Usage("this version looks for no errors: add --no-search".to_owned()));
     }
-    let text = read(&arguments.plant)?;
-    let at = |faults: Vec<Fault>| plant_faults(&arguments.plant, &text, &faults);
-    let (plant, mut faults) = plant::parse_leniently(&text);
-    let Some(plant) = plant else { return Err(Stop::Input(at(faults))) };
-    let compiled = CompiledPlant::compile(&plant);
-    if !faults.is_empty() {
-        faults.extend(compiled.err().into_iter().flatten());
-        faults.sort();
-        return Err(Stop::Input(at(faults)));
-    }
-    let expectation = match Expectation::of(&plant) {
-        Ok(expectation) => expectation,
-        Err(fault) => {
-            return Err(Stop::Input(at(compiled.err().into_iter().flatten().chain([fault]).collect())));
-        }
-    };
-    let zone = expectation.zone.clone();
-    let window =
-        Window { from: time(arguments.from.as_deref(), &zone)?, to: time(arguments.to.as_deref(), &zone)? };
-    let in_log = |faults| log_faults(&arguments.log, &faults);
     let reading = Progress::reading(&arguments.log);
-    let log = Log::open(&arguments.log, expectation);
-    let (compiled, log) = match (compiled.map_err(at), log.map_err(in_log)) {
-        (Ok(compiled), Ok(log)) => (compiled, log),
-        (compiled, log) => {
-            return Err(Stop::Input([compiled.err(), log.err()].into_iter().flatten().flatten().collect()));
-        }
-    };
-    let counters = counters(&plant, &log);
-    if !counters.is_empty() {
-        return Err(Stop::Input(at(counters)));
-    }
-    let notes = notes(&arguments.log, &log);
+    let input = Input::read(arguments)?;
+    let notes = notes(&arguments.log, &input.log);
     reading.aside(|| notes.iter().for_each(say));
-    let labels = Labels::from(&compiled);
-    let (plant_name, revision) = (plant.name.value.as_str(), plant.revision.as_str());
-    let report: Box<dyn Report> = if arguments.json {
-        Box::new(JsonReport { plant: plant_name, revision, labels })
-    } else {
-        Box::new(TextReport { plant: plant_name, revision, zone: &zone, labels })
-    };
-    let found = Found::of(arguments.periods, &plant, &log, window);
-    let found = found.map_err(|faults| Stop::Input(in_log(faults)))?;
+    let found = Found::of(arguments.periods, &input.plant, &input.log, input.window);
+    let found = found.map_err(|faults| Stop::Input(log_faults(&arguments.log, &faults)))?;
     drop(reading);
-    at(found.silent.clone()).iter().chain(&found.rejections).chain(&found.summary).for_each(say);
-    let run =
-        Run { compiled: &compiled, report: &*report, log: &arguments.log, is_for_people: !arguments.json };
+    let silent = plant_faults(&arguments.plant, &input.text, &found.silent);
+    silent.iter().chain(&found.rejections).chain(&found.summary).for_each(say);
+    let run = Run {
+        compiled: &input.compiled,
+        report: &*input.report(arguments.json),
+        log: &arguments.log,
+        is_for_people: !arguments.json,
+    };
     run.balance_all(found, notes)
+}
+
+/// A plant file and a log in which nothing is wrong.
+struct Input {
+    text: String,
+    plant: Plant,
+    compiled: CompiledPlant,
+    log: Log,
+    window: Window,
+}
+
+impl Input {
+    /// Reads both, and tells what is wrong with both at once.
+    fn read(arguments: &Arguments) -> Result<Self, Stop> {
+        let text = read(&arguments.plant)?;
+        let at = |faults: Vec<Fault>| plant_faults(&arguments.plant, &text, &faults);
+        let (plant, mut faults) = plant::parse_leniently(&text);
+        let Some(plant) = plant else { return Err(Stop::Input(at(faults))) };
+        let compiled = CompiledPlant::compile(&plant);
+        if !faults.is_empty() {
+            faults.extend(compiled.err().into_iter().flatten());
+            return Err(Stop::Input(at(faults)));
+        }
+        let expectation = match Expectation::of(&plant) {
+            Ok(expectation) => expectation,
+            Err(fault) => {
+                return Err(Stop::Input(at(compiled.err().into_iter().flatten().chain([fault]).collect())));
+            }
+        };
+        let instant = |argument: &Option<String>| time(argument.as_deref(), &expectation.zone);
+        let window = Window { from: instant(&arguments.from)?, to: instant(&arguments.to)? };
+        let log =
+            Log::open(&arguments.log, expectation).map_err(|faults| log_faults(&arguments.log, &faults));
+        let (compiled, log) = match (compiled.map_err(at), log) {
+            (Ok(compiled), Ok(log)) => (compiled, log),
+            (compiled, log) => {
+                return Err(Stop::Input(
+                    [compiled.err(), log.err()].into_iter().flatten().flatten().collect(),
+                ));
+            }
+        };
+        let counters = counters(&plant, &log);
+        if !counters.is_empty() {
+            return Err(Stop::Input(plant_faults(&arguments.plant, &text, &counters)));
+        }
+        Ok(Self { text, plant, compiled, log, window })
+    }
+
+    fn report(&self, json: bool) -> Box<dyn Report + '_> {
+        let labels = Labels::from(&self.compiled);
+        let (plant, revision) = (self.plant.name.value.as_str(), self.plant.revision.as_str());
+        if json {
+            Box::new(JsonReport { plant, revision, labels })
+        } else {
+            Box::new(TextReport { plant, revision, zone: &self.log.expectation().zone, labels })
+        }
+    }
 }
 
 fn read(path: &Path) -> Result<String, Stop> {

@@ -48,6 +48,8 @@ const CERTAIN_DRIFT: f64 = 4.0;
 pub struct Steady {
     /// In order of time.
     pub periods: Vec<Period>,
+    /// How long each is, s: what the plant file says, or the time between samples where that is longer.
+    pub length: f64,
     /// What lies between them and why it is no period, in order of time.
     pub rejections: Vec<Rejection>,
     /// Names of the tags that were watched.
@@ -74,6 +76,7 @@ fn find(tags: &[ExpectedTag], columns: &Columns, window: Window, rule: &SteadyRu
         ..Steady::default()
     };
     let search = Search::new(tags, columns, window, rule, watched, needed);
+    steady.length = seconds(0, search.period);
     if !search.extent.is_empty() {
         search.run(&mut steady);
     }

@@ -227,11 +227,11 @@ fn the_beginning_of_a_period_is_that_of_its_first_sample_and_its_end_that_of_the
         let reading = period.readings[0].unwrap();
         assert_eq!((reading.mean, reading.samples, reading.standard_error), (100.0, 1, None));
     }
-    let quarters =
+    let halves =
         found(&plant(1, "period = \"30 min\""), &columns(1, MINUTE, HOUR, |_, _| Sample::Good(100.0)));
-    let ends: Vec<f64> = quarters.periods.iter().map(|period| minutes(period.to)).collect();
-    assert_eq!((ends, quarters.periods[1].readings[0].unwrap().samples), (vec![30.0, 60.0], 30));
-    assert_eq!(quarters.periods[0].trends[0].unwrap().slope, 0.0);
+    let ends: Vec<f64> = halves.periods.iter().map(|period| minutes(period.to)).collect();
+    assert_eq!((ends, halves.periods[1].readings[0].unwrap().samples), (vec![30.0, 60.0], 30));
+    assert_eq!(halves.periods[0].trends[0].unwrap().slope, 0.0);
 }
 
 #[test]

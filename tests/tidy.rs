@@ -78,7 +78,7 @@ const FLOORS: &[&[&str]] = &[
     &["equipment"],
     &["balance"],
     &["compile", "estimate"],
-    &["verdict"],
+    &["verdict", "search"],
     &["compiled_plant"],
 ];
 

@@ -9,10 +9,12 @@
 #![allow(clippy::format_push_string, reason = "plant files are put together once, where the words matter")]
 
 mod covariance;
+mod false_alarms;
 mod heat_meter;
 mod networks;
 mod nonlinear;
 mod oracles;
 mod plants;
+mod search;
 #[path = "../support/mod.rs"]
 mod support;

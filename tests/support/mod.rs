@@ -98,7 +98,7 @@ fn place(labels: &[Label], name: &str) -> usize {
 
 /// A balance with the names of what it holds.
 pub(crate) struct Told<'c> {
-    compiled: &'c CompiledPlant,
+    pub(crate) compiled: &'c CompiledPlant,
     pub(crate) balance: Balance,
 }
 

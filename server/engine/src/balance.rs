@@ -107,6 +107,57 @@ pub struct IndicatorBalance {
     pub repeat_sigma: Option<f64>,
 }
 
+/// What a finding suspects.
+#[derive(Clone, Copy, Debug, PartialEq, Eq)]
+pub enum FindingKind {
+    /// A tag reads wrong.
+    Bias,
+    /// A machine loses mass or heat that the plant file doesn't know of.
+    Loss,
+    /// A value that the plant file gives is wrong.
+    Given,
+    /// What several tags have in common is wrong.
+    Shared,
+}
+
+/// A suspected error of one balance.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Finding {
+    /// Which of the plant's hypotheses.
+    pub hypothesis: usize,
+    /// Size of the error if it is this one, in the SI of the hypothesis's unit: reading or given minus truth; a loss
+    /// is positive when it leaves.
+    pub estimate: f64,
+    /// Its standard uncertainty.
+    pub sigma: f64,
+    /// Probability that this hypothesis is true.
+    pub probability: f64,
+    /// Hypotheses that these readings can't tell from it, the most probable first.
+    pub alternatives: Vec<Alternative>,
+}
+
+/// A hypothesis that would explain the readings about as well as the one a finding names.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Alternative {
+    /// Which of the plant's hypotheses.
+    pub hypothesis: usize,
+    /// Probability that it is true.
+    pub probability: f64,
+}
+
+/// An error that a search looks for.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Hypothesis {
+    /// What kind.
+    pub kind: FindingKind,
+    /// The tag, machine, given quantity or shared group that is wrong.
+    pub at: String,
+    /// What it is called among alternatives: like `at`, but unaccounted heat by its quantity, to tell it from lost mass.
+    pub name: String,
+    /// Unit in which its size is written.
+    pub unit: crate::quantity::Unit,
+}
+
 /// The global test: weighted sum of squares against the chi-square distribution.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct GlobalTest {
@@ -144,6 +195,10 @@ pub struct Balance {
     pub iterations: u32,
     /// The global test of the balance without findings.
     pub global_test: Option<GlobalTest>,
+    /// The global test over what no finding names; without findings the same.
+    pub global_test_after: Option<GlobalTest>,
+    /// Suspected errors, the most probable first; empty where nothing was looked for.
+    pub findings: Vec<Finding>,
     /// One for each tag of the plant, in its order.
     pub tags: Vec<TagBalance>,
     /// One for each soft given.

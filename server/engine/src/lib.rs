@@ -15,11 +15,12 @@ pub mod formula;
 pub mod kkt;
 pub mod plant;
 pub mod quantity;
+mod search;
 mod verdict;
 
 pub use balance::{
-    Balance, GlobalTest, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, Reading,
-    TagBalance, TagClass, Verdict,
+    Alternative, Balance, Finding, FindingKind, GlobalTest, Hypothesis, IndicatorBalance, Label, Outcome,
+    QuantityBalance, QuantityClass, Reading, TagBalance, TagClass, Verdict,
 };
 pub use compiled_plant::CompiledPlant;
 pub use fault::{Fault, Position};

@@ -52,7 +52,7 @@ impl Uncertainty {
 }
 
 /// Length of a tag's span, SI; zero without one.
-fn span_length(tag: &Tag) -> f64 {
+pub(super) fn span_length(tag: &Tag) -> f64 {
     tag.span.as_ref().map_or(0.0, |span| (span.value[1] - span.value[0]).abs())
 }
 
@@ -156,6 +156,16 @@ impl Instrument {
             Region::One.properties(pressure.max(station), temperature).map(|water| water.volume.value);
         volume.map_or(0.0, |volume| GRAVITY * height / volume)
     }
+}
+
+/// An error that several tags have in common.
+pub(crate) struct SharedGroup {
+    /// Its name and the unit it is told in.
+    pub(crate) label: Label,
+    /// The variable that stands for it, in its own standard deviations.
+    pub(crate) variable: u32,
+    /// Its standard deviation, in the SI of the label's unit.
+    pub(crate) size: f64,
 }
 
 /// A quantity that is given with a standard deviation.

@@ -4,20 +4,22 @@ use std::collections::HashMap;
 
 use meterwright_thermo::Scalar;
 
-use super::instrument::{Instrument, SoftGiven, Uncertainty};
+use super::instrument::{Instrument, SharedGroup, SoftGiven, Uncertainty, span_length};
 use super::quantities::Naming;
 use crate::balance::Label;
 use crate::equation::{Difference, Equation, EquationError, Held, Row, RowRole};
 use crate::equipment::{Knowledge, VariableRole};
 use crate::fault::Fault;
-use crate::plant::{Amount, Given, GivenSigma, GivenValue, Located, Plant, Spread};
+use crate::plant::{Amount, Given, GivenSigma, GivenValue, Located, Plant, SharedError, Spread};
 use crate::quantity::{Dimension, Reference, Unit};
 
 /// What the plant file says of its quantities.
 pub(super) struct Known {
     pub(super) instruments: Vec<Instrument>,
     pub(super) givens: Vec<SoftGiven>,
-    pub(super) shared: Vec<u32>,
+    pub(super) shared: Vec<SharedGroup>,
+    /// What is given exactly.
+    pub(super) exact: Vec<(Label, u32)>,
     /// Variables that something observes.
     pub(super) observed: Vec<u32>,
     /// Variables that the plant file speaks of.
@@ -30,6 +32,7 @@ pub(super) fn state(plant: &Plant, naming: &mut Naming<'_>, faults: &mut Vec<Fau
         instruments: Vec::new(),
         givens: Vec::new(),
         shared: Vec::new(),
+        exact: Vec::new(),
         observed: Vec::new(),
         touched: Vec::new(),
     };
@@ -56,7 +59,7 @@ pub(super) fn state(plant: &Plant, naming: &mut Naming<'_>, faults: &mut Vec<Fau
     }
     known.observed.extend(known.instruments.iter().filter_map(|instrument| instrument.variable));
     known.observed.extend(known.givens.iter().map(|given| given.variable));
-    known.observed.extend(&known.shared);
+    known.observed.extend(known.shared.iter().map(|group| group.variable));
     known.touched.extend(read.into_iter().flatten());
     known
 }
@@ -99,6 +102,9 @@ impl Known {
                     return Err(Fault { span: amount.span, message });
                 }
                 data.knowledge = Knowledge::Exact(value);
+                let unit = shown_as(naming, variable, amount.value.unit);
+                let name = given.quantity.value.clone();
+                self.exact.push((Label { name: name.clone(), quantity: Some(name), unit }, variable));
             }
             GivenValue::Soft { value, sigma } => {
                 let unit = value.value.unit;
@@ -107,11 +113,7 @@ impl Known {
                 let si = amount_si(naming, variable, value.value);
                 let sigma = given_sigma(sigma, value.value)?;
                 let name = given.quantity.value.clone();
-                let unit = if unit.dimension() == Dimension::TEMPERATURE {
-                    shown(naming, variable, unit)
-                } else {
-                    unit
-                };
+                let unit = shown_as(naming, variable, unit);
                 let label = Label { name: name.clone(), quantity: Some(name), unit };
                 self.givens.push(SoftGiven { label, variable, shift, value: si, sigma });
             }
@@ -176,7 +178,6 @@ impl Known {
         let mut errors: Vec<Vec<(u32, Spread)>> = vec![Vec::new(); self.instruments.len()];
         for group in &plant.shared {
             let error = unlisted(naming, &format!("{} (shared error)", group.name.value), Dimension::RATIO);
-            self.shared.push(error);
             for tag in &group.tags {
                 let Some(&index) = by_tag.get(tag.value.as_str()) else { continue };
                 if let Err(message) = self.can_share(index, group.sigma) {
@@ -185,6 +186,7 @@ impl Known {
                 }
                 errors[index].push((error, group.sigma));
             }
+            self.shared.extend(self.group(group, error, by_tag));
         }
         for (instrument, errors) in self.instruments.iter_mut().zip(errors) {
             let (Some(quantity), false) = (instrument.variable, errors.is_empty()) else { continue };
@@ -202,6 +204,24 @@ impl Known {
             let row = Row::new(format!("{name}: shared error"), RowRole::Law, variables, SharedReading);
             naming.system().rows.push(row);
         }
+    }
+
+    /// A shared error in the unit of its first tag, or as a share of the reading.
+    fn group(
+        &self,
+        group: &SharedError,
+        variable: u32,
+        by_tag: &HashMap<&str, usize>,
+    ) -> Option<SharedGroup> {
+        let first = by_tag.get(group.tags.first()?.value.as_str())?;
+        let tag = &self.instruments[*first].tag;
+        let (unit, size) = match group.sigma {
+            Spread::OfReading(share) => (Unit::default_for(Dimension::RATIO), share),
+            Spread::OfSpan(share) => (tag.unit.value, share * span_length(tag)),
+            Spread::Absolute(amount) => (tag.unit.value, amount),
+        };
+        let label = Label { name: group.name.value.clone(), quantity: None, unit };
+        Some(SharedGroup { label, variable, size })
     }
 
     fn can_share(&self, index: usize, sigma: Spread) -> Result<(), String> {
@@ -303,10 +323,14 @@ fn amount_si(naming: &mut Naming<'_>, variable: u32, amount: Amount) -> f64 {
     }
 }
 
-/// The unit a given temperature is shown in: differences in kelvins.
-fn shown(naming: &mut Naming<'_>, variable: u32, unit: Unit) -> Unit {
+/// The unit a given is shown in: its own, but differences of temperature in kelvins.
+fn shown_as(naming: &mut Naming<'_>, variable: u32, unit: Unit) -> Unit {
     let difference = naming.system().variables[variable as usize].role != VariableRole::Temperature;
-    if difference { Unit::default_for_difference(Dimension::TEMPERATURE) } else { unit }
+    if difference && unit.dimension() == Dimension::TEMPERATURE {
+        Unit::default_for_difference(Dimension::TEMPERATURE)
+    } else {
+        unit
+    }
 }
 
 fn given_sigma(sigma: &Located<GivenSigma>, value: Amount) -> Result<f64, Fault> {

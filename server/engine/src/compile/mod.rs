@@ -7,7 +7,7 @@ mod network;
 mod quantities;
 mod shaft;
 
-pub(crate) use instrument::{Exclusion, Instrument, Observed, SoftGiven};
+pub(crate) use instrument::{Exclusion, Instrument, Observed, SharedGroup, SoftGiven};
 
 use std::collections::HashMap;
 
@@ -24,14 +24,28 @@ pub(crate) struct Compiled {
     pub(crate) machines: Vec<Machine>,
     pub(crate) instruments: Vec<Instrument>,
     pub(crate) givens: Vec<SoftGiven>,
-    /// Variables that stand for a shared error in its own standard deviations.
-    pub(crate) shared: Vec<u32>,
+    /// Errors that tags have in common.
+    pub(crate) shared: Vec<SharedGroup>,
+    /// What is given exactly.
+    pub(crate) exact: Vec<(Label, u32)>,
+    /// The losses that machines may have.
+    pub(crate) losses: Vec<Loss>,
     /// Indicators as variables.
     pub(crate) indicators: Vec<(Label, u32)>,
     /// Quantities that results list, as variables.
     pub(crate) quantities: Vec<(Label, u32)>,
     /// Pressure (Pa) and temperature (K) of the surroundings, for the start of a solve.
     pub(crate) surroundings: (f64, f64),
+}
+
+/// What a machine may lose though the plant file says it doesn't: variables that are exactly zero.
+pub(crate) struct Loss {
+    /// The machine, in the order of the plant file.
+    pub(crate) machine: usize,
+    /// Its lost mass.
+    pub(crate) mass: Option<u32>,
+    /// Its unaccounted heat.
+    pub(crate) heat: Option<u32>,
 }
 
 /// Compiles a plant.
@@ -64,16 +78,33 @@ pub(crate) fn compile(plant: &Plant) -> Result<Compiled, Vec<Fault>> {
     saturated_pairs(&mut system);
     turn_needed_definitions_into_laws(&mut system, &known.observed);
     let quantities = listed(plant, &system, &known.touched);
+    let losses = losses(&system, &network.machines);
     Ok(Compiled {
         system,
         machines: network.machines,
         instruments: known.instruments,
         givens: known.givens,
         shared: known.shared,
+        exact: known.exact,
+        losses,
         indicators,
         quantities,
         surroundings: (plant.surroundings.pressure, plant.surroundings.temperature),
     })
+}
+
+fn losses(system: &System, machines: &[Machine]) -> Vec<Loss> {
+    let zero = |machine: &Machine, quantity: &str| {
+        let variable = system.find(&format!("{}.{quantity}", machine.name))?;
+        let knowledge = system.variables[variable as usize].knowledge;
+        (knowledge == Knowledge::Exact(0.0)).then_some(variable)
+    };
+    let of = |(number, machine): (usize, &Machine)| Loss {
+        machine: number,
+        mass: zero(machine, "mass_loss"),
+        heat: zero(machine, "unaccounted_heat"),
+    };
+    machines.iter().enumerate().map(of).collect()
 }
 
 fn in_order(mut faults: Vec<Fault>) -> Vec<Fault> {

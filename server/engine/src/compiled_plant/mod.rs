@@ -1,5 +1,6 @@
 //! The door: a plant compiled once, then one balance for each set of readings.
 
+mod search;
 #[cfg(test)]
 mod tests;
 
@@ -7,12 +8,13 @@ use crate::balance::{
     Balance, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, Reading, TagBalance, TagClass,
     Verdict,
 };
-use crate::compile::{self, Compiled, Exclusion, Instrument, Observed, SoftGiven};
+use crate::compile::{self, Compiled, Exclusion, Instrument, Observed, SharedGroup, SoftGiven};
 use crate::equipment::{Machine, VariableRole};
 use crate::estimate::{self, Anchor, Failure, Observation, Problem, Situation, Solution, Variances};
 use crate::fault::Fault;
 use crate::kkt::FactorError;
 use crate::plant::Plant;
+use crate::search::{Candidate, Parts, candidates};
 use crate::verdict::{self, Judged, Limits, Residual};
 
 /// A plant, ready to be balanced. Thread-safe: balances take it by shared reference, and the same readings from the
@@ -22,7 +24,7 @@ pub struct CompiledPlant {
     machines: Vec<Machine>,
     instruments: Vec<Instrument>,
     soft_givens: Vec<SoftGiven>,
-    shared: Vec<u32>,
+    shared: Vec<SharedGroup>,
     indicator_variables: Vec<u32>,
     quantity_variables: Vec<u32>,
     tags: Vec<Label>,
@@ -32,6 +34,8 @@ pub struct CompiledPlant {
     surroundings: (f64, f64),
     situation: Situation,
     limits: Limits,
+    candidates: Vec<Candidate>,
+    chances: search::Chances,
 }
 
 impl CompiledPlant {
@@ -41,8 +45,18 @@ impl CompiledPlant {
     /// Every fault of the plant file that can be seen without readings.
     pub fn compile(plant: &Plant) -> Result<Self, Vec<Fault>> {
         let compiled = compile::compile(plant)?;
-        let Compiled { system, machines, instruments, givens, shared, indicators, quantities, surroundings } =
-            compiled;
+        let Compiled {
+            system,
+            machines,
+            instruments,
+            givens,
+            shared,
+            exact,
+            losses,
+            indicators,
+            quantities,
+            surroundings,
+        } = compiled;
         // Rows are only made of variables that the system has handed out.
         let problem = Problem::new(system).map_err(|error| {
             vec![Fault {
@@ -50,6 +64,18 @@ impl CompiledPlant {
                 message: format!("the plant gives no problem to solve: {error}"),
             }]
         })?;
+        let parts = Parts {
+            instruments: &instruments,
+            givens: &givens,
+            shared: &shared,
+            exact,
+            losses,
+            machines: &machines,
+            streams: &problem.streams,
+            roles: &problem.roles,
+            units: &plant.display_units,
+        };
+        let candidates = candidates(&parts, &plant.search);
         let (indicator_labels, indicator_variables) = indicators.into_iter().unzip();
         let (quantity_labels, quantity_variables) = quantities.into_iter().unzip();
         Ok(Self {
@@ -67,6 +93,8 @@ impl CompiledPlant {
             quantity_variables,
             surroundings,
             limits: Limits::default(),
+            candidates,
+            chances: search::Chances::default(),
         })
     }
 
@@ -113,20 +141,28 @@ impl CompiledPlant {
     /// Missing readings at the end may be left out.
     pub fn balance(&self, readings: &[Option<Reading>], anchor: Option<&Anchor>) -> Balance {
         let observations = self.observe(readings);
-        let situation = &observations.situation;
-        let from_anchor = anchor.and_then(|anchor| estimate::solve(&self.problem, situation, anchor).ok());
-        let solution = match from_anchor {
-            Some(solution) => Ok(solution),
-            None => self.solve_cold(situation).map(|(solution, _)| solution),
-        };
-        let result = solution
+        let result = self
+            .solve(&observations.situation, anchor)
             .map_err(|failure| failure.to_string())
             .and_then(|solution| self.report(&observations, &solution).map_err(|error| error.to_string()));
-        result.unwrap_or_else(|reason| Balance {
+        result.unwrap_or_else(|reason| self.not_found(&observations, reason))
+    }
+
+    fn not_found(&self, observations: &Observations, reason: String) -> Balance {
+        Balance {
             outcome: Outcome::NotFound { reason },
             warnings: observations.warnings(&self.instruments),
             ..Balance::default()
-        })
+        }
+    }
+
+    /// Solves from the anchor where there is one, and from the readings alone where that finds nothing.
+    fn solve(&self, situation: &Situation, anchor: Option<&Anchor>) -> Result<Solution, Failure> {
+        let from_anchor = anchor.and_then(|anchor| estimate::solve(&self.problem, situation, anchor).ok());
+        match from_anchor {
+            Some(solution) => Ok(solution),
+            None => self.solve_cold(situation).map(|(solution, _)| solution),
+        }
     }
 
     fn solve_cold(&self, situation: &Situation) -> Result<(Solution, Anchor), Failure> {
@@ -139,11 +175,14 @@ impl CompiledPlant {
     fn observe(&self, readings: &[Option<Reading>]) -> Observations {
         let mut situation = self.situation.clone();
         let mut tags = Vec::with_capacity(self.instruments.len());
+        let mut places = Vec::with_capacity(self.instruments.len());
         for (number, instrument) in self.instruments.iter().enumerate() {
             let reading = readings.get(number).and_then(Option::as_ref);
             let samples = reading.map_or(0, |reading| reading.samples);
             let read = instrument.read(reading);
+            let mut place = None;
             if let (Ok(observed), Some(variable)) = (read, instrument.variable) {
+                place = Some(situation.observations.len());
                 situation.observations.push(Observation {
                     variable,
                     value: observed.value + instrument.shift,
@@ -158,8 +197,10 @@ impl CompiledPlant {
             if let (Ok(observed), Some(constant)) = (read, instrument.constant) {
                 situation.exact[constant as usize] = Some(observed.value);
             }
+            places.push(place);
             tags.push((read, samples));
         }
+        let first_given = situation.observations.len();
         for given in &self.soft_givens {
             let value = given.value + given.shift;
             situation.observations.push(Observation {
@@ -169,15 +210,15 @@ impl CompiledPlant {
                 repeat: None,
             });
         }
-        for variable in &self.shared {
+        for group in &self.shared {
             situation.observations.push(Observation {
-                variable: *variable,
+                variable: group.variable,
                 value: 0.0,
                 sigma: 1.0,
                 repeat: None,
             });
         }
-        Observations { situation, tags }
+        Observations { situation, tags, places, first_given }
     }
 
     /// Everything a user is told of a solution.
@@ -193,13 +234,16 @@ impl CompiledPlant {
         let quantities = self.quantity_balances(&told, &tags);
         let indicators = self.indicator_balances(&told);
         let statistic = 2.0 * observations.situation.objective(&solution.x);
+        let global_test = Some(verdict::global_test(statistic, linear.degrees_of_freedom(), &self.limits));
         let mut warnings = observations.warnings(&self.instruments);
         warnings.extend(solution.at_bound.iter().map(|variable| self.bound_warning(*variable)));
         warnings.extend(solution.remarks.iter().cloned());
         Ok(Balance {
             outcome: Outcome::Converged,
             iterations: solution.iterations,
-            global_test: Some(verdict::global_test(statistic, linear.degrees_of_freedom(), &self.limits)),
+            global_test,
+            global_test_after: global_test,
+            findings: Vec::new(),
             tags,
             givens,
             quantities,
@@ -332,6 +376,10 @@ type Read = Result<Observed, Exclusion>;
 struct Observations {
     situation: Situation,
     tags: Vec<(Read, u32)>,
+    /// Where each tag's observation stands, if it takes part.
+    places: Vec<Option<usize>>,
+    /// Where those of the soft givens begin; those of the shared errors follow.
+    first_given: usize,
 }
 
 impl Observations {

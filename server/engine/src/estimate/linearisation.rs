@@ -4,11 +4,11 @@ use std::sync::Arc;
 
 use meterwright_thermo::{Dual, Scalar};
 
-use crate::kkt::{Diagonal, Factor, FactorError, Pattern, Vectors};
+use crate::kkt::{Diagonal, Factor, FactorError, Vectors};
 
 use super::cache::Structure;
-use super::problem::Situation;
-use super::solve::undetermined;
+use super::problem::{Problem, Situation};
+use super::structure::undetermined;
 
 /// A factor of the equations' system at a solution and what it takes to ask it.
 ///
@@ -17,8 +17,14 @@ use super::solve::undetermined;
 /// gain `G = Z W`, minus the derivative of the inverse's diagonal is then `diag(Z diag(w^2 r^2) Z) = diag(G r^2 G')`,
 /// the part of each variance that comes from repeatability.
 pub struct Linearisation {
-    structure: Arc<Structure>,
-    factor: Factor<Dual<1>>,
+    pub(super) structure: Arc<Structure>,
+    pub(super) factor: Factor<Dual<1>>,
+    /// The same factor in plain numbers, made when a search asks for it.
+    pub(super) real: Option<Factor<f64>>,
+    /// Scaled derivatives of the equations.
+    pub(super) values: Vec<f64>,
+    /// Scaled multipliers of the equations.
+    pub(super) multipliers: Vec<f64>,
     repeat_known: bool,
     /// Whether nothing determines each variable.
     touched: Vec<bool>,
@@ -49,7 +55,8 @@ impl Variances {
 impl Linearisation {
     pub(super) fn new(
         structure: Arc<Structure>,
-        jacobian: &[f64],
+        values: Vec<f64>,
+        multipliers: Vec<f64>,
         situation: &Situation,
         degrees_of_freedom: usize,
         undefined: Vec<u32>,
@@ -62,13 +69,23 @@ impl Linearisation {
             weights[place] += Dual { re: w, gradient: [rate] } * (scale[place] * scale[place]);
         }
         let mut factor = Factor::new(Arc::clone(&structure.analysis));
-        factor.refactor(jacobian, &Diagonal::new(&weights))?;
+        factor.refactor(&values, &Diagonal::new(&weights))?;
         let mut touched = undetermined(&structure.analysis, scale.len());
         for variable in undefined {
             touched[variable as usize] = true;
         }
         let repeat_known = situation.observations.iter().any(|observation| observation.repeat.is_some());
-        Ok(Self { structure, factor, repeat_known, touched, degrees_of_freedom, doubt: Vec::new() })
+        Ok(Self {
+            structure,
+            factor,
+            real: None,
+            values,
+            multipliers,
+            repeat_known,
+            touched,
+            degrees_of_freedom,
+            doubt: Vec::new(),
+        })
     }
 
     /// Degrees of freedom of the balance: observations beyond what they determine.
@@ -103,23 +120,21 @@ impl Linearisation {
         Ok(Variances { total, repeat: self.repeat_known.then_some(repeat), doubt: self.doubt.clone() })
     }
 
+    /// Counts in that every variable may be off by this much, besides.
+    pub(crate) fn widen(&mut self, moves: &[f64]) {
+        self.doubt.resize(moves.len(), 0.0);
+        self.doubt.iter_mut().zip(moves).for_each(|(doubt, moved)| *doubt += moved * moved);
+    }
+
     /// Counts in that a variable is held at a guess which may be wrong by `span`: every other variable then moves by its
     /// derivative along it.
-    pub(super) fn doubt(
-        &mut self,
-        pattern: &Pattern,
-        values: &[f64],
-        variable: u32,
-        span: f64,
-    ) -> Result<(), FactorError> {
+    pub(super) fn doubt(&mut self, problem: &Problem, variable: u32, span: f64) -> Result<(), FactorError> {
         let scale = &self.structure.scaling.column;
         let mut right = Vectors::zeros(&self.structure.analysis);
         let mut moved = Vectors::zeros(&self.structure.analysis);
-        for (row, slot) in right.rows.iter_mut().enumerate() {
-            let mut entries = values[pattern.range(row)].iter().zip(pattern.row(row));
-            if let Some((value, _)) = entries.find(|(_, column)| **column == variable) {
-                *slot = Dual::constant(-value * span / scale[variable as usize]);
-            }
+        for (row, place) in problem.column(variable) {
+            let value = self.values[*place as usize];
+            right.rows[*row as usize] = Dual::constant(-value * span / scale[variable as usize]);
         }
         self.factor.solve(&right, &mut moved)?;
         self.doubt.resize(scale.len(), 0.0);

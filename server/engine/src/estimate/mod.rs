@@ -2,11 +2,12 @@
 //!
 //! It knows variables, rows, observations and what is exact; not tags, not plants. In files named after the nouns of
 //! the mathematics: `problem`, `evaluation`, `scaling`, `start`,
-//! `cold`, `solve`, `step`, `bounds`, `linearisation`.
+//! `cold`, `solve`, `structure`, `step`, `bounds`, `linearisation`, `direction`.
 
 mod bounds;
 mod cache;
 mod cold;
+mod direction;
 mod evaluation;
 mod failure;
 mod linearisation;
@@ -18,8 +19,10 @@ mod scaling;
 mod solve;
 mod start;
 mod step;
+mod structure;
 
 pub use cold::solve_cold;
+pub(crate) use direction::{Direction, Response};
 pub use failure::Failure;
 pub use linearisation::{Linearisation, Variances};
 pub use problem::{Observation, Problem, Situation};

@@ -5,7 +5,7 @@ use super::problem::{Problem, Situation};
 use super::scaling::{Anchor, Scaling};
 use crate::kkt::Column;
 
-pub(crate) use super::solve::undetermined;
+pub(crate) use super::structure::undetermined;
 
 /// The scaled derivatives of all rows at an anchor, and how each variable takes part.
 pub(crate) fn linearised(

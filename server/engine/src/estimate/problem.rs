@@ -40,6 +40,10 @@ pub struct Problem {
     pub(crate) only_defined: Vec<bool>,
     /// Where the entries of the rows' local variables stand in the pattern, whose rows are sorted by column.
     places: Vec<u32>,
+    /// The rows in which each variable stands, and where in the pattern.
+    column_entries: Vec<(u32, u32)>,
+    /// Where each variable's entries begin.
+    column_start: Vec<u32>,
     /// Where each row's places begin.
     place_start: Vec<u32>,
     /// The rows once more in three plain arrays, so that evaluating thousands of them doesn't hunt through memory: what
@@ -80,7 +84,10 @@ impl Problem {
         let coefficients = system.rows.iter().flat_map(coefficients).collect();
         let recipes = system.rows.iter().map(recipe).collect();
         let pattern = Pattern::new(system.variables.len(), row_start, columns)?;
+        let (column_start, column_entries) = transposed(&pattern);
         Ok(Self {
+            column_start,
+            column_entries,
             roles: system.variables.iter().map(|variable| variable.role).collect(),
             bounded: Bounded::among(&system.variables),
             variables: system.variables,
@@ -112,6 +119,12 @@ impl Problem {
         &self.coefficients[self.local_range(row)]
     }
 
+    /// The rows in which a variable stands, and where in the pattern.
+    pub(crate) fn column(&self, variable: u32) -> &[(u32, u32)] {
+        let ends = [variable, variable + 1].map(|at| self.column_start[at as usize] as usize);
+        &self.column_entries[ends[0]..ends[1]]
+    }
+
     fn local_range(&self, row: usize) -> std::ops::Range<usize> {
         self.place_start[row] as usize..self.place_start[row + 1] as usize
     }
@@ -139,6 +152,27 @@ impl Problem {
         });
         Situation { exact: exact.collect(), observations: Vec::new() }
     }
+}
+
+/// The pattern by columns: where each one's entries begin, and the row and place of each entry.
+fn transposed(pattern: &Pattern) -> (Vec<u32>, Vec<(u32, u32)>) {
+    let mut start = vec![0_u32; pattern.columns() + 1];
+    for row in 0..pattern.rows() {
+        pattern.row(row).iter().for_each(|column| start[*column as usize + 1] += 1);
+    }
+    for column in 1..start.len() {
+        start[column] += start[column - 1];
+    }
+    let mut next = start.clone();
+    let mut entries = vec![(0, 0); pattern.len()];
+    for row in 0..pattern.rows() {
+        for (place, column) in pattern.range(row).zip(pattern.row(row)) {
+            let slot = &mut next[*column as usize];
+            entries[*slot as usize] = (row as u32, place as u32);
+            *slot += 1;
+        }
+    }
+    (start, entries)
 }
 
 fn recipe(row: &Row) -> Recipe {

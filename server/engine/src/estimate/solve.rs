@@ -1,19 +1,18 @@
 //! The solve: Gauss-Newton steps on the equations' KKT system, a filter for the step, an active set for the bounds.
 
-use std::sync::Arc;
-
 use crate::equation::Form;
-use crate::kkt::{Analysis, Column, Diagonal, Factor, FactorError, Vectors};
+use crate::kkt::{Diagonal, Factor, Vectors};
 
 use super::bounds::{ActiveSet, Bounded, Side, blocked, longest};
-use super::cache::{Key, Structure};
-use super::evaluation::{Evaluation, NoValue};
+use super::cache::Structure;
+use super::evaluation::Evaluation;
 use super::failure::{Failure, explain};
 use super::linearisation::Linearisation;
 use super::phases;
 use super::problem::{Problem, Situation};
 use super::scaling::{Anchor, Scaling};
 use super::step::{Damping, Filter};
+use super::structure::undetermined;
 
 /// A state that closes every equation with the least sum of squares.
 pub struct Solution {
@@ -42,14 +41,10 @@ const MOST_PHASE_CHANGES: usize = 5;
 const STEP_TOLERANCE: f64 = 1e-10;
 /// A variable that cuts so many steps in a row short runs away.
 const RUNAWAY: usize = 3;
-/// So many variables that the equations hardly see are held before a search is given up.
-const MOST_HELD: usize = 12;
 /// After a step this large, in sigmas, the factor is made anew.
 const STALE_STEP: f64 = 0.5;
 /// So is it when steps shrink no faster than this.
 const STALE_RATE: f64 = 0.05;
-/// Each equation closes to this much of its largest term.
-const CLOSURE: f64 = 1e-9;
 /// Steps onto the equations go on until they close to this.
 const CLOSED_WELL: f64 = 1e-11;
 
@@ -96,26 +91,26 @@ pub fn solve_from(
 }
 
 /// One search for a solution with the forms held.
-struct Search<'a> {
-    problem: &'a Problem,
-    situation: &'a Situation,
-    anchor: &'a Anchor,
-    weight: Vec<f64>,
-    mean: Vec<f64>,
-    x: Vec<f64>,
-    forms: Vec<Form>,
-    active: ActiveSet,
+pub(super) struct Search<'a> {
+    pub(super) problem: &'a Problem,
+    pub(super) situation: &'a Situation,
+    pub(super) anchor: &'a Anchor,
+    pub(super) weight: Vec<f64>,
+    pub(super) mean: Vec<f64>,
+    pub(super) x: Vec<f64>,
+    pub(super) forms: Vec<Form>,
+    pub(super) active: ActiveSet,
     /// Where the search began.
-    start: Vec<f64>,
+    pub(super) start: Vec<f64>,
     /// Variables that ran away and are held where they began: what the equations hardly see can't be known, and must
     /// not disturb the rest.
-    held: Vec<u32>,
-    here: Evaluation,
+    pub(super) held: Vec<u32>,
+    pub(super) here: Evaluation,
     /// Scaled derivatives of the equations at the point reached.
-    values: Vec<f64>,
+    pub(super) values: Vec<f64>,
     /// Scaled multipliers of the equations.
-    multipliers: Vec<f64>,
-    iterations: u32,
+    pub(super) multipliers: Vec<f64>,
+    pub(super) iterations: u32,
 }
 
 /// Why one structure didn't lead to a solution.
@@ -174,25 +169,6 @@ impl<'a> Search<'a> {
         if self.hold_the_unseen()? { self.rounds() } else { Err(failure) }
     }
 
-    /// Holds pressures, temperatures and enthalpies whose uncertainty exceeds what they can span, one after the other, the
-    /// worst first, because the next may be known once that is held. Says whether there was any.
-    fn hold_the_unseen(&mut self) -> Result<bool, Failure> {
-        let before = self.held.len();
-        while self.held.len() < before + MOST_HELD {
-            let structure = self.structure(false)?;
-            let Ok(inverse) = structure.factor.selected_inverse() else { break };
-            let beyond = |bounded: &Bounded| {
-                let j = bounded.variable() as usize;
-                let sigma = inverse.variance(j).sqrt() * structure.scaling.column[j];
-                (sigma / bounded.role().span(self.x[j]), bounded.variable())
-            };
-            let worst = self.problem.bounded.iter().map(beyond).max_by(|a, b| a.0.total_cmp(&b.0));
-            let Some((_, variable)) = worst.filter(|(share, _)| *share > 1.0) else { break };
-            self.held.push(variable);
-        }
-        Ok(self.held.len() > before)
-    }
-
     /// Rounds of solving and of mending the active set.
     fn rounds(&mut self) -> Result<Solution, Failure> {
         let mut local = false;
@@ -226,73 +202,6 @@ impl<'a> Search<'a> {
             }
         }
         Err(explain(self.problem, self.situation, self.anchor, &self.x, &self.forms))
-    }
-
-    /// The structure for the masks and forms at hand: the anchor's where it serves, else one of this point alone.
-    fn structure(&mut self, local: bool) -> Result<Arc<Structure>, Failure> {
-        let columns: Vec<u8> = (0..self.x.len()).map(|j| self.column_kind(j)).collect();
-        if local {
-            return self.analyse(&columns, None);
-        }
-        let key = Key { anchor: self.anchor.id, columns, forms: self.forms.clone() };
-        if let Some(found) = self.problem.cache.get(&key) {
-            return Ok(found);
-        }
-        match self.analyse(&key.columns, Some(self.anchor)) {
-            Ok(made) => {
-                self.problem.cache.put(key, &made);
-                Ok(made)
-            }
-            Err(_) => self.analyse(&key.columns, None),
-        }
-    }
-
-    fn column_kind(&self, variable: usize) -> u8 {
-        let fixed = self.situation.exact[variable].is_some()
-            || self.active.contains(variable as u32)
-            || self.held.contains(&(variable as u32));
-        match (fixed, self.weight[variable] > 0.0) {
-            (true, _) => FIXED,
-            (false, true) => WEIGHTED,
-            (false, false) => FREE,
-        }
-    }
-
-    /// Analyses the structure at the anchor, or at the point reached.
-    fn analyse(&self, kinds: &[u8], anchor: Option<&Anchor>) -> Result<Arc<Structure>, Failure> {
-        let point = anchor.map_or(&self.x, |anchor| &anchor.x);
-        let mut evaluation = Evaluation::default();
-        evaluation.at(self.problem, point, &self.forms).map_err(|error| self.no_value(&error))?;
-        let scaling = Scaling::at(self.problem, self.anchor.scale.clone(), &evaluation);
-        let mut values = Vec::new();
-        scaling.jacobian(&evaluation, &mut values);
-        let columns: Vec<Column> = kinds
-            .iter()
-            .enumerate()
-            .map(|(j, kind)| match *kind {
-                FIXED => Column::Fixed,
-                FREE => Column::Free,
-                _ => {
-                    let of_anchor = anchor.map_or(0.0, |anchor| anchor.weight[j]);
-                    let weight = if of_anchor > 0.0 { of_anchor } else { self.weight[j] };
-                    Column::Weighted(weight * scaling.column[j].powi(2))
-                }
-            })
-            .collect();
-        let analysis = Analysis::new(&self.problem.pattern, &values, &columns)
-            .map_err(|error| Failure::Numeric { message: error.to_string() })?;
-        let analysis = Arc::new(analysis);
-        let weights: Vec<f64> =
-            columns.iter().map(|column| if let Column::Weighted(w) = column { *w } else { 0.0 }).collect();
-        let mut factor = Factor::new(Arc::clone(&analysis));
-        factor
-            .refactor(&values, &Diagonal::new(&weights))
-            .map_err(|error| Failure::Numeric { message: error.to_string() })?;
-        Ok(Arc::new(Structure { analysis, scaling, factor, point: point.clone(), evaluation }))
-    }
-
-    fn no_value(&self, error: &NoValue) -> Failure {
-        Failure::no_value(self.problem, error)
     }
 
     /// Steps until they vanish. Each solves the conditions of the least sum of squares, linearised, for increments of
@@ -482,62 +391,6 @@ impl<'a> Search<'a> {
         Ok(())
     }
 
-    /// Whether what the structure took for dependent is so at the solution: dropped rows close, and directions that
-    /// nothing determines still change no equation.
-    fn structure_holds(&self, structure: &Structure) -> bool {
-        let closes = self.here.worst(self.problem, &self.x).0 < CLOSURE;
-        closes
-            && structure.analysis.null_vectors().iter().all(|vector| self.is_null(structure, vector.column))
-    }
-
-    /// A held column that had no coefficients where the structure was analysed must have none here.
-    fn is_null(&self, structure: &Structure, column: u32) -> bool {
-        let vectors = structure.analysis.null_vectors();
-        let Some(vector) = vectors.iter().find(|vector| vector.column == column) else { return true };
-        if vector.parts.len() > 1 {
-            return true;
-        }
-        let scaling = &structure.scaling;
-        (0..self.problem.rows.len()).all(|row| {
-            let range = self.problem.pattern.range(row);
-            range.zip(self.problem.pattern.row(row)).all(|(place, other)| {
-                let scaled = self.here.jacobian[place] * scaling.column[column as usize] * scaling.row[row];
-                *other != column || scaled.abs() < 1e-9
-            })
-        })
-    }
-
-    /// The linearisation at the solution. Uncertainties ignore active bounds: with any, the structure is that without.
-    fn linearise(&mut self, structure: Arc<Structure>) -> Result<Linearisation, Failure> {
-        let counted = (0..self.x.len()).filter(|j| self.column_kind(*j) == WEIGHTED).count();
-        // Observations beyond what they determine: those that the structure counts once a variable, each of the others
-        // on the same variable, and all of exact variables and of those at a bound.
-        let degrees_of_freedom = (self.situation.observations.len()
-            + structure.analysis.degrees_of_freedom())
-        .saturating_sub(counted);
-        let structure = if self.active.is_empty() {
-            structure
-        } else {
-            let held = std::mem::take(&mut self.active);
-            let columns: Vec<u8> = (0..self.x.len()).map(|j| self.column_kind(j)).collect();
-            self.active = held;
-            let free = self.analyse(&columns, None)?;
-            free.scaling.jacobian(&self.here, &mut self.values);
-            free
-        };
-        let undefined = self.here.undefined.iter().map(|row| self.problem.rows[*row as usize].variables()[0]);
-        let unknown = undefined.chain(self.held.iter().copied()).collect();
-        let numeric = |error: FactorError| Failure::Numeric { message: error.to_string() };
-        let mut linear =
-            Linearisation::new(structure, &self.values, self.situation, degrees_of_freedom, unknown)
-                .map_err(numeric)?;
-        for variable in &self.held {
-            let span = self.problem.roles[*variable as usize].span(self.x[*variable as usize]);
-            linear.doubt(&self.problem.pattern, &self.values, *variable, span).map_err(numeric)?;
-        }
-        Ok(linear)
-    }
-
     fn finish(&mut self, linearisation: Linearisation) -> Solution {
         Solution {
             x: std::mem::take(&mut self.x),
@@ -549,22 +402,3 @@ impl<'a> Search<'a> {
         }
     }
 }
-
-/// Which variables the null vectors of an analysis move.
-pub(crate) fn undetermined(analysis: &Analysis, variables: usize) -> Vec<bool> {
-    let mut moved = vec![false; variables];
-    for vector in analysis.null_vectors() {
-        let largest = vector.parts.iter().map(|(_, part)| part.abs()).fold(0.0, f64::max);
-        for (column, part) in &vector.parts {
-            moved[*column as usize] |= part.abs() > NULL_PART * largest;
-        }
-    }
-    moved
-}
-
-/// A part of a null vector this small against its largest is rounding: ranks are clean, with a gap of nine decades.
-const NULL_PART: f64 = 1e-9;
-
-const FREE: u8 = 0;
-const WEIGHTED: u8 = 1;
-const FIXED: u8 = 2;

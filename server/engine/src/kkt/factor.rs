@@ -2,7 +2,7 @@
 
 use std::sync::Arc;
 
-use meterwright_thermo::Scalar;
+use meterwright_thermo::{Dual, Scalar};
 use thiserror::Error;
 
 use super::analysis::{ABSENT, Analysis};
@@ -197,6 +197,23 @@ impl<S: Scalar> Factor<S> {
             tape = rest;
         }
         Ok(())
+    }
+}
+
+impl<const N: usize> Factor<Dual<N>> {
+    /// The same factor in plain numbers.
+    pub fn real(&self) -> Factor<f64> {
+        let real = |numbers: &[Dual<N>]| numbers.iter().map(|number| number.re).collect();
+        Factor {
+            analysis: Arc::clone(&self.analysis),
+            storage: real(&self.storage),
+            ready: self.ready,
+            diagonal: real(&self.diagonal),
+            coefficients: self.coefficients.clone(),
+            work: Vec::new(),
+            correction: Vec::new(),
+            bound: Vec::new(),
+        }
     }
 }
 

@@ -1,0 +1,428 @@
+//! One balance with a search for errors: what the readings say is wrong, and the balance that closes when that is
+//! accounted for.
+
+use std::collections::HashMap;
+use std::sync::{Arc, Mutex, PoisonError};
+
+use super::{CompiledPlant, Observations, Read};
+use crate::balance::{
+    Alternative, Balance, Finding, GlobalTest, Hypothesis, QuantityBalance, Reading, Verdict,
+};
+use crate::compile::Instrument;
+use crate::estimate::{self, Anchor, Direction, Response, Situation, Solution};
+use crate::kkt::FactorError;
+use crate::search::{Candidate, Chance, Evidence, Named, Posterior, Set, Sizes, Source, name};
+use crate::verdict;
+
+/// What the search of a plant keeps from one balance to the next: how strong chance makes the strongest hypothesis, for
+/// each set of hypotheses that was live.
+#[derive(Default)]
+pub(super) struct Chances {
+    kept: Mutex<HashMap<ChanceKey, Arc<Chance>>>,
+}
+
+/// The anchor and the live hypotheses.
+type ChanceKey = (Option<u64>, Vec<u32>);
+
+/// So many simulations are kept; more sets of live hypotheses than this a log has only if it is strange.
+const KEPT: usize = 64;
+/// Below this share of a prior variance's worth of information nothing could be seen of a hypothesis.
+const INVISIBLE: f64 = 0.1;
+/// So many hypotheses are weighed against one another; of more, those that alone are the strongest.
+const MOST: usize = 500;
+
+/// The hypotheses that one solution can speak of.
+struct Live {
+    /// Which candidate each is.
+    candidate: Vec<u32>,
+    /// Their prior standard deviations, SI.
+    size: Vec<f64>,
+    response: Vec<Response>,
+    evidence: Evidence,
+    /// How many there were before the strongest were chosen.
+    visible: usize,
+}
+
+/// What a search has found.
+struct Found {
+    named: Vec<Named>,
+    posterior: Posterior,
+}
+
+impl CompiledPlant {
+    /// The errors that a search looks for; findings name them by their place here.
+    pub fn hypotheses(&self) -> impl ExactSizeIterator<Item = &Hypothesis> {
+        self.candidates.iter().map(|candidate| &candidate.hypothesis)
+    }
+
+    /// Balances one set of readings like [`Self::balance`] and looks for errors. `false_alarm_rate` is the share of
+    /// error-free balances in which anything is found. With findings, values and uncertainties are those of the balance
+    /// that accounts for them; classes, redundancies and statistics stay those of the balance that doesn't.
+    pub fn balance_and_search(
+        &self,
+        readings: &[Option<Reading>],
+        anchor: Option<&Anchor>,
+        false_alarm_rate: f64,
+    ) -> Balance {
+        let observations = self.observe(readings);
+        match self.solve(&observations.situation, anchor) {
+            Ok(solution) => self
+                .searched(&observations, solution, anchor, false_alarm_rate)
+                .unwrap_or_else(|error| self.not_found(&observations, error.to_string())),
+            Err(failure) => self.not_found(&observations, failure.to_string()),
+        }
+    }
+
+    fn searched(
+        &self,
+        observations: &Observations,
+        mut solution: Solution,
+        anchor: Option<&Anchor>,
+        false_alarm_rate: f64,
+    ) -> Result<Balance, FactorError> {
+        let mut balance = self.report(observations, &solution)?;
+        for tag in
+            balance.tags.iter_mut().chain(&mut balance.givens).filter(|tag| tag.verdict == Verdict::Suspect)
+        {
+            tag.verdict = Verdict::Trusted;
+        }
+        let live = self.live(observations, &mut solution)?;
+        if live.candidate.is_empty() {
+            return Ok(balance);
+        }
+        let chance = self.chance(observations, &live, anchor)?;
+        let rate = 1.0 - (1.0 - false_alarm_rate).powf(live.candidate.len() as f64 / live.visible as f64);
+        if live.evidence.strongest(&live.evidence.score) <= chance.limit(rate) {
+            return Ok(balance);
+        }
+        let posterior = Posterior::of(&live.evidence);
+        if !posterior.complete {
+            balance.warnings.push(
+                "more combinations of errors would explain these readings than could be weighed: the findings are the \
+                 most probable of those that were"
+                    .into(),
+            );
+        }
+        let found = Found { named: name(&live.evidence, &posterior), posterior };
+        self.account_for(observations, &solution, anchor, &live, &found, &mut balance)?;
+        Ok(balance)
+    }
+
+    /// Scores and information of every hypothesis that these readings can speak of.
+    fn live(&self, observations: &Observations, solution: &mut Solution) -> Result<Live, FactorError> {
+        let mut directions: Vec<(u32, Direction, f64)> = Vec::new();
+        for (number, candidate) in (0..).zip(&self.candidates) {
+            let Some((direction, sigma)) = self.direction(observations, &solution.x, candidate.source) else {
+                continue;
+            };
+            directions.push((number, direction, candidate.size(&solution.x, sigma)));
+        }
+        let mut live = Live {
+            candidate: Vec::new(),
+            size: Vec::new(),
+            response: Vec::new(),
+            evidence: Evidence::default(),
+            visible: 0,
+        };
+        for (candidate, direction, size) in directions {
+            let Some(response) = solution.linearisation.response(&self.problem, direction)? else { continue };
+            let visible = response.information(&response, true) * size * size;
+            if visible > INVISIBLE && visible.is_finite() {
+                live.candidate.push(candidate);
+                live.size.push(size);
+                live.response.push(response);
+            }
+        }
+        live.visible = live.candidate.len();
+        live.keep_the_strongest();
+        live.weigh(&self.candidates);
+        Ok(live)
+    }
+
+    /// The direction of a hypothesis, and the sigma of its observation.
+    fn direction(&self, observations: &Observations, x: &[f64], source: Source) -> Option<(Direction, f64)> {
+        if let Source::Exact(variable) = source {
+            let exact = observations.situation.exact[variable as usize].is_some();
+            return exact.then_some((Direction::Exact(variable), 0.0));
+        }
+        let place = self.place(observations, source)?;
+        let observation = observations.situation.observations[place];
+        let deviation = observation.value - x[observation.variable as usize];
+        let weight = observation.sigma.powi(-2);
+        let direction = Direction::Observation { variable: observation.variable, weight, deviation };
+        Some((direction, observation.sigma))
+    }
+
+    /// Which observation a hypothesis speaks of.
+    fn place(&self, observations: &Observations, source: Source) -> Option<usize> {
+        match source {
+            Source::Exact(_) => None,
+            Source::Tag(tag) => observations.places[tag],
+            Source::Given(given) => Some(observations.first_given + given),
+            Source::Shared(group) => Some(observations.first_given + self.soft_givens.len() + group),
+        }
+    }
+
+    /// How strong chance makes the strongest hypothesis: simulated at the anchor, so that it doesn't depend on which
+    /// balance came first.
+    fn chance(
+        &self,
+        observations: &Observations,
+        live: &Live,
+        anchor: Option<&Anchor>,
+    ) -> Result<Arc<Chance>, FactorError> {
+        let key = (anchor.map(|anchor| anchor.id), live.candidate.clone());
+        let kept = |chances: &Chances| {
+            chances.kept.lock().unwrap_or_else(PoisonError::into_inner).get(&key).cloned()
+        };
+        if let Some(kept) = kept(&self.chances) {
+            return Ok(kept);
+        }
+        let made = match anchor.and_then(|anchor| self.typical(observations, live, anchor)) {
+            Some(typical) => Chance::simulate(&typical?.evidence),
+            None => Chance::simulate(&live.evidence),
+        };
+        let made = Arc::new(made);
+        let mut kept = self.chances.kept.lock().unwrap_or_else(PoisonError::into_inner);
+        if kept.len() >= KEPT {
+            kept.clear();
+        }
+        kept.insert(key, Arc::clone(&made));
+        Ok(made)
+    }
+
+    /// The same hypotheses at the anchor, as if every live tag read what it says.
+    fn typical(
+        &self,
+        observations: &Observations,
+        live: &Live,
+        anchor: &Anchor,
+    ) -> Option<Result<Live, FactorError>> {
+        let reads = |(tag, instrument): (&(Read, u32), &Instrument)| {
+            tag.0.ok()?;
+            let base = instrument.base?;
+            let value = anchor.x[base as usize] - instrument.shift;
+            Some(Reading::single(instrument.tag.unit.value.from_si(value)))
+        };
+        let readings: Vec<Option<Reading>> =
+            observations.tags.iter().zip(&self.instruments).map(reads).collect();
+        let mut typical = self.observe(&readings);
+        for observation in &mut typical.situation.observations {
+            observation.value = anchor.x[observation.variable as usize];
+        }
+        let mut solution = estimate::solve(&self.problem, &typical.situation, anchor).ok()?;
+        let made = self.live(&typical, &mut solution);
+        // Where the anchor lets other hypotheses be seen, it says nothing of these.
+        match made {
+            Ok(made) if made.candidate != live.candidate => None,
+            made => Some(made),
+        }
+    }
+
+    /// Solves once more with the readings lessened by what the errors are expected to be, so that everything closes, and
+    /// puts that balance and the findings into the one without them.
+    fn account_for(
+        &self,
+        observations: &Observations,
+        before: &Solution,
+        anchor: Option<&Anchor>,
+        live: &Live,
+        found: &Found,
+        balance: &mut Balance,
+    ) -> Result<(), FactorError> {
+        let (named, posterior) = (&found.named, &found.posterior);
+        let groups: Vec<Vec<u16>> = named.iter().map(Named::group).collect();
+        let of = groups.concat();
+        let counts =
+            |set: &Set| groups.iter().all(|group| group.iter().any(|member| set.members.contains(member)));
+        let sizes = posterior.sizes(&live.evidence, &of, counts);
+        balance.findings = named.iter().map(|named| self.finding(live, posterior, named)).collect();
+        self.mark(balance);
+        let lessened = self.lessened(observations, live, &of, &sizes);
+        let Ok(mut after) = self.solve(&lessened, anchor) else {
+            balance.warnings.push(
+                "the balance that accounts for the findings wasn't found: values are those without them"
+                    .into(),
+            );
+            return Ok(());
+        };
+        for moves in moves(before, live, &of, &sizes) {
+            after.linearisation.widen(&moves);
+        }
+        let told = self.report(observations, &after)?;
+        balance.iterations += after.iterations;
+        for (tag, after) in
+            balance.tags.iter_mut().zip(&told.tags).chain(balance.givens.iter_mut().zip(&told.givens))
+        {
+            tag.reconciled = after.reconciled;
+            tag.reconciled_sigma = after.reconciled_sigma;
+            tag.correction = after.correction;
+        }
+        for (quantity, after) in balance.quantities.iter_mut().zip(&told.quantities) {
+            *quantity = QuantityBalance { class: quantity.class, ..*after };
+        }
+        balance.indicators = told.indicators;
+        balance.warnings.extend(
+            told.warnings
+                .into_iter()
+                .filter(|warning| !balance.warnings.contains(warning))
+                .collect::<Vec<_>>(),
+        );
+        balance.global_test_after = Some(self.test_after(observations, &after, live, named, balance));
+        Ok(())
+    }
+
+    fn finding(&self, live: &Live, posterior: &Posterior, named: &Named) -> Finding {
+        let place = named.hypothesis as usize;
+        let own = posterior
+            .sizes(&live.evidence, &[named.hypothesis], |set| set.members.contains(&named.hypothesis));
+        let candidate = &self.candidates[live.candidate[place] as usize];
+        let unit = candidate.factor * live.size[place];
+        Finding {
+            hypothesis: live.candidate[place] as usize,
+            estimate: own.mean[0] * unit,
+            sigma: own.covariance[0].max(0.0).sqrt() * unit.abs(),
+            probability: posterior.inclusion[place],
+            alternatives: named
+                .alternatives
+                .iter()
+                .map(|other| Alternative {
+                    hypothesis: live.candidate[*other as usize] as usize,
+                    probability: posterior.inclusion[*other as usize],
+                })
+                .collect(),
+        }
+    }
+
+    /// Tags and givens that a finding names or that it could as well name are suspect.
+    fn mark(&self, balance: &mut Balance) {
+        let findings = &balance.findings;
+        let of = |finding: &Finding| {
+            let others: Vec<usize> = finding.alternatives.iter().map(|other| other.hypothesis).collect();
+            std::iter::once(finding.hypothesis).chain(others)
+        };
+        let suspects: Vec<Source> =
+            findings.iter().flat_map(of).map(|at| self.candidates[at].source).collect();
+        for source in suspects {
+            match source {
+                Source::Tag(tag) => balance.tags[tag].verdict = Verdict::Suspect,
+                Source::Given(given) => balance.givens[given].verdict = Verdict::Suspect,
+                Source::Shared(_) | Source::Exact(_) => {}
+            }
+        }
+    }
+
+    /// The situation with the expected errors taken out.
+    fn lessened(&self, observations: &Observations, live: &Live, of: &[u16], sizes: &Sizes) -> Situation {
+        let mut situation = observations.situation.clone();
+        for (hypothesis, mean) in of.iter().zip(&sizes.mean) {
+            let amount = mean * live.size[*hypothesis as usize];
+            match self.candidates[live.candidate[*hypothesis as usize] as usize].source {
+                Source::Exact(variable) => {
+                    if let Some(value) = &mut situation.exact[variable as usize] {
+                        *value += amount;
+                    }
+                }
+                source => {
+                    if let Some(place) = self.place(observations, source) {
+                        situation.observations[place].value -= amount;
+                    }
+                }
+            }
+        }
+        situation
+    }
+
+    /// The global test over what no finding names.
+    fn test_after(
+        &self,
+        observations: &Observations,
+        after: &Solution,
+        live: &Live,
+        named: &[Named],
+        balance: &Balance,
+    ) -> GlobalTest {
+        let source =
+            |named: &Named| self.candidates[live.candidate[named.hypothesis as usize] as usize].source;
+        let taken: Vec<usize> =
+            named.iter().filter_map(|named| self.place(observations, source(named))).collect();
+        let rest = observations.situation.observations.iter().enumerate();
+        let rest = rest.filter(|(place, _)| !taken.contains(place));
+        let statistic = rest.map(|(_, o)| ((o.value - after.x[o.variable as usize]) / o.sigma).powi(2)).sum();
+        let freedom = balance.global_test.map_or(0, |test| test.degrees_of_freedom as usize);
+        verdict::global_test(statistic, freedom.saturating_sub(named.len()), &self.limits)
+    }
+}
+
+impl Live {
+    /// Keeps those that alone are the strongest, in their order, where there are too many to weigh every two.
+    fn keep_the_strongest(&mut self) {
+        if self.candidate.len() <= MOST {
+            return;
+        }
+        let strength = |at: usize| {
+            let response = &self.response[at];
+            response.score * response.score / response.information(response, true)
+        };
+        let mut order: Vec<(f64, usize)> = (0..self.candidate.len()).map(|at| (strength(at), at)).collect();
+        order.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(&b.1)));
+        let mut kept = vec![false; order.len()];
+        order.iter().take(MOST).for_each(|(_, at)| kept[*at] = true);
+        let keep = |at: &mut usize| {
+            *at += 1;
+            kept[*at - 1]
+        };
+        let mut at = 0;
+        self.candidate.retain(|_| keep(&mut at));
+        at = 0;
+        self.size.retain(|_| keep(&mut at));
+        at = 0;
+        self.response.retain(|_| keep(&mut at));
+    }
+
+    /// Scores and information in units of the prior standard deviations.
+    fn weigh(&mut self, candidates: &[Candidate]) {
+        let count = self.candidate.len();
+        let mut information = vec![0.0; count * count];
+        for a in 0..count {
+            for b in 0..=a {
+                let value =
+                    self.response[a].information(&self.response[b], a == b) * self.size[a] * self.size[b];
+                information[a * count + b] = value;
+                information[b * count + a] = value;
+            }
+        }
+        self.evidence = Evidence {
+            log_odds: self.candidate.iter().map(|at| candidates[*at as usize].log_odds).collect(),
+            score: self
+                .response
+                .iter()
+                .zip(&self.size)
+                .map(|(response, size)| response.score * size)
+                .collect(),
+            information,
+        };
+    }
+}
+
+/// How all variables move with the uncertain sizes of some hypotheses: one vector for each independent part of their
+/// covariance.
+fn moves(solution: &Solution, live: &Live, of: &[u16], sizes: &Sizes) -> Vec<Vec<f64>> {
+    let size = of.len();
+    let covariance = nalgebra::DMatrix::from_row_slice(size, size, &sizes.covariance);
+    let law = covariance.symmetric_eigen();
+    (0..size)
+        .filter(|part| law.eigenvalues[*part] > 0.0)
+        .map(|part| {
+            let root = law.eigenvalues[part].sqrt();
+            let mut sum = vec![0.0; solution.x.len()];
+            for (row, hypothesis) in of.iter().enumerate() {
+                let place = *hypothesis as usize;
+                let amount = root * law.eigenvectors[(row, part)] * live.size[place];
+                let moved = solution.linearisation.moved(&live.response[place]);
+                sum.iter_mut().zip(moved).for_each(|(sum, moved)| *sum += amount * moved);
+            }
+            sum
+        })
+        .collect()
+}

@@ -14,24 +14,31 @@ use crate::kkt::FactorError;
 use crate::search::{Candidate, Chance, Evidence, Named, Posterior, Set, Sizes, Source, name};
 use crate::verdict;
 
-/// What the search of a plant keeps from one balance to the next: how strong chance makes the strongest hypothesis, for
-/// each set of hypotheses that was live.
+/// What the search of a plant keeps from one balance to the next, for each anchor and set of live tags.
 #[derive(Default)]
 pub(super) struct Chances {
-    kept: Mutex<HashMap<ChanceKey, Arc<Chance>>>,
+    kept: Mutex<HashMap<ChanceKey, Option<Arc<Expected>>>>,
 }
 
-/// The anchor and the live hypotheses.
-type ChanceKey = (Option<u64>, Vec<u32>);
+/// The anchor, and which tags take part.
+type ChanceKey = (u64, Vec<bool>);
 
-/// So many simulations are kept; more sets of live hypotheses than this a log has only if it is strange.
+/// What can be expected of a search before anything is read.
+struct Expected {
+    /// The hypotheses of which anything can be seen.
+    visible: Vec<u32>,
+    /// How strong chance makes the strongest of them.
+    chance: Chance,
+}
+
+/// So many simulations are kept; more sets of live tags than this a log has only if it is strange.
 const KEPT: usize = 64;
 /// Below this share of a prior variance's worth of information nothing could be seen of a hypothesis.
 const INVISIBLE: f64 = 0.1;
-/// So many hypotheses are weighed against one another; of more, those that alone are the strongest.
+/// So many hypotheses are weighed against one another at most.
 const MOST: usize = 500;
 
-/// The hypotheses that one solution can speak of.
+/// Hypotheses with what one solution says of them.
 struct Live {
     /// Which candidate each is.
     candidate: Vec<u32>,
@@ -39,8 +46,6 @@ struct Live {
     size: Vec<f64>,
     response: Vec<Response>,
     evidence: Evidence,
-    /// How many there were before the strongest were chosen.
-    visible: usize,
 }
 
 /// What a search has found.
@@ -86,13 +91,22 @@ impl CompiledPlant {
         {
             tag.verdict = Verdict::Trusted;
         }
-        let live = self.live(observations, &mut solution)?;
+        let expected = anchor.and_then(|anchor| self.expected(observations, anchor));
+        let chosen = match &expected {
+            Some(expected) => expected.visible.clone(),
+            None => self.strongest(observations, &solution),
+        };
+        let live = self.live(observations, &mut solution, &chosen)?;
         if live.candidate.is_empty() {
             return Ok(balance);
         }
-        let chance = self.chance(observations, &live, anchor)?;
-        let rate = 1.0 - (1.0 - false_alarm_rate).powf(live.candidate.len() as f64 / live.visible as f64);
-        if live.evidence.strongest(&live.evidence.score) <= chance.limit(rate) {
+        let limit = match &expected {
+            Some(expected) => expected.chance.limit(false_alarm_rate),
+            None => {
+                Chance::simulate(&live.evidence).limit(self.share_of(live.candidate.len(), false_alarm_rate))
+            }
+        };
+        if live.evidence.strongest(&live.evidence.score) <= limit {
             return Ok(balance);
         }
         let posterior = Posterior::of(&live.evidence);
@@ -108,33 +122,64 @@ impl CompiledPlant {
         Ok(balance)
     }
 
-    /// Scores and information of every hypothesis that these readings can speak of.
-    fn live(&self, observations: &Observations, solution: &mut Solution) -> Result<Live, FactorError> {
-        let mut directions: Vec<(u32, Direction, f64)> = Vec::new();
-        for (number, candidate) in (0..).zip(&self.candidates) {
-            let Some((direction, sigma)) = self.direction(observations, &solution.x, candidate.source) else {
-                continue;
-            };
-            directions.push((number, direction, candidate.size(&solution.x, sigma)));
+    /// The rate that some of the hypotheses may be held to, if all are to be held to this one together.
+    fn share_of(&self, some: usize, rate: f64) -> f64 {
+        1.0 - (1.0 - rate).powf(some as f64 / self.candidates.len().max(some) as f64)
+    }
+
+    /// All hypotheses, or where there are too many to weigh every two, those that the solution speaks for most: half of
+    /// them observations by their test, half exact values by what half the sum of squares would gain.
+    fn strongest(&self, observations: &Observations, solution: &Solution) -> Vec<u32> {
+        let all = 0..self.candidates.len() as u32;
+        if all.len() <= MOST {
+            return all.collect();
         }
+        let mut kept = Vec::with_capacity(MOST);
+        for exact in [false, true] {
+            let mut ranked: Vec<(f64, u32)> = all
+                .clone()
+                .filter(|at| matches!(self.candidates[*at as usize].source, Source::Exact(_)) == exact)
+                .filter_map(|at| {
+                    let candidate = &self.candidates[at as usize];
+                    let (direction, sigma) = self.direction(observations, &solution.x, candidate.source)?;
+                    let score = solution.linearisation.score(&self.problem, direction);
+                    Some((score.abs() * candidate.size(&solution.x, sigma), at))
+                })
+                .collect();
+            ranked.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(&b.1)));
+            kept.extend(ranked.iter().take(MOST / 2).map(|(_, at)| *at));
+        }
+        kept.sort_unstable();
+        kept
+    }
+
+    /// Scores and information of those of some hypotheses that these readings can speak of.
+    fn live(
+        &self,
+        observations: &Observations,
+        solution: &mut Solution,
+        chosen: &[u32],
+    ) -> Result<Live, FactorError> {
         let mut live = Live {
             candidate: Vec::new(),
             size: Vec::new(),
             response: Vec::new(),
             evidence: Evidence::default(),
-            visible: 0,
         };
-        for (candidate, direction, size) in directions {
+        for number in chosen {
+            let candidate = &self.candidates[*number as usize];
+            let Some((direction, sigma)) = self.direction(observations, &solution.x, candidate.source) else {
+                continue;
+            };
+            let size = candidate.size(&solution.x, sigma);
             let Some(response) = solution.linearisation.response(&self.problem, direction)? else { continue };
             let visible = response.information(&response, true) * size * size;
-            if visible > INVISIBLE && visible.is_finite() {
-                live.candidate.push(candidate);
+            if visible > 0.0 && visible.is_finite() {
+                live.candidate.push(*number);
                 live.size.push(size);
                 live.response.push(response);
             }
         }
-        live.visible = live.candidate.len();
-        live.keep_the_strongest();
         live.weigh(&self.candidates);
         Ok(live)
     }
@@ -163,41 +208,28 @@ impl CompiledPlant {
         }
     }
 
-    /// How strong chance makes the strongest hypothesis: simulated at the anchor, so that it doesn't depend on which
-    /// balance came first.
-    fn chance(
-        &self,
-        observations: &Observations,
-        live: &Live,
-        anchor: Option<&Anchor>,
-    ) -> Result<Arc<Chance>, FactorError> {
-        let key = (anchor.map(|anchor| anchor.id), live.candidate.clone());
-        let kept = |chances: &Chances| {
-            chances.kept.lock().unwrap_or_else(PoisonError::into_inner).get(&key).cloned()
-        };
-        if let Some(kept) = kept(&self.chances) {
-            return Ok(kept);
+    /// What can be expected of a search with these tags live: reckoned at the anchor, so that it doesn't depend on which
+    /// balance came first. Nothing where the anchor doesn't tell.
+    fn expected(&self, observations: &Observations, anchor: &Anchor) -> Option<Arc<Expected>> {
+        if self.candidates.len() > MOST {
+            return None;
         }
-        let made = match anchor.and_then(|anchor| self.typical(observations, live, anchor)) {
-            Some(typical) => Chance::simulate(&typical?.evidence),
-            None => Chance::simulate(&live.evidence),
-        };
-        let made = Arc::new(made);
-        let mut kept = self.chances.kept.lock().unwrap_or_else(PoisonError::into_inner);
+        let key = (anchor.id, observations.places.iter().map(Option::is_some).collect());
+        let lock = || self.chances.kept.lock().unwrap_or_else(PoisonError::into_inner);
+        if let Some(kept) = lock().get(&key) {
+            return kept.clone();
+        }
+        let made = self.expect(observations, anchor).map(Arc::new);
+        let mut kept = lock();
         if kept.len() >= KEPT {
             kept.clear();
         }
-        kept.insert(key, Arc::clone(&made));
-        Ok(made)
+        kept.insert(key, made.clone());
+        made
     }
 
-    /// The same hypotheses at the anchor, as if every live tag read what it says.
-    fn typical(
-        &self,
-        observations: &Observations,
-        live: &Live,
-        anchor: &Anchor,
-    ) -> Option<Result<Live, FactorError>> {
+    /// Searches as if every live tag read what the anchor says.
+    fn expect(&self, observations: &Observations, anchor: &Anchor) -> Option<Expected> {
         let reads = |(tag, instrument): (&(Read, u32), &Instrument)| {
             tag.0.ok()?;
             let base = instrument.base?;
@@ -207,16 +239,19 @@ impl CompiledPlant {
         let readings: Vec<Option<Reading>> =
             observations.tags.iter().zip(&self.instruments).map(reads).collect();
         let mut typical = self.observe(&readings);
+        if typical.places.iter().map(Option::is_some).ne(observations.places.iter().map(Option::is_some)) {
+            return None;
+        }
         for observation in &mut typical.situation.observations {
             observation.value = anchor.x[observation.variable as usize];
         }
         let mut solution = estimate::solve(&self.problem, &typical.situation, anchor).ok()?;
-        let made = self.live(&typical, &mut solution);
-        // Where the anchor lets other hypotheses be seen, it says nothing of these.
-        match made {
-            Ok(made) if made.candidate != live.candidate => None,
-            made => Some(made),
-        }
+        let all: Vec<u32> = (0..self.candidates.len() as u32).collect();
+        let every = self.live(&typical, &mut solution, &all).ok()?;
+        let seen = |(at, number): (usize, &u32)| (every.evidence.own(at) > INVISIBLE).then_some(*number);
+        let visible: Vec<u32> = every.candidate.iter().enumerate().filter_map(seen).collect();
+        let live = self.live(&typical, &mut solution, &visible).ok()?;
+        Some(Expected { visible, chance: Chance::simulate(&live.evidence) })
     }
 
     /// Solves once more with the readings lessened by what the errors are expected to be, so that everything closes, and
@@ -355,31 +390,6 @@ impl CompiledPlant {
 }
 
 impl Live {
-    /// Keeps those that alone are the strongest, in their order, where there are too many to weigh every two.
-    fn keep_the_strongest(&mut self) {
-        if self.candidate.len() <= MOST {
-            return;
-        }
-        let strength = |at: usize| {
-            let response = &self.response[at];
-            response.score * response.score / response.information(response, true)
-        };
-        let mut order: Vec<(f64, usize)> = (0..self.candidate.len()).map(|at| (strength(at), at)).collect();
-        order.sort_by(|a, b| b.0.total_cmp(&a.0).then(a.1.cmp(&b.1)));
-        let mut kept = vec![false; order.len()];
-        order.iter().take(MOST).for_each(|(_, at)| kept[*at] = true);
-        let keep = |at: &mut usize| {
-            *at += 1;
-            kept[*at - 1]
-        };
-        let mut at = 0;
-        self.candidate.retain(|_| keep(&mut at));
-        at = 0;
-        self.size.retain(|_| keep(&mut at));
-        at = 0;
-        self.response.retain(|_| keep(&mut at));
-    }
-
     /// Scores and information in units of the prior standard deviations.
     fn weigh(&mut self, candidates: &[Candidate]) {
         let count = self.candidate.len();

@@ -57,24 +57,22 @@ impl Linearisation {
         let (analysis, scale) = (&self.structure.analysis, &self.structure.scaling.column);
         let mut push = Vectors::zeros(analysis);
         let (mut pushed_columns, mut pushed_rows) = (Vec::new(), Vec::new());
-        let (score, own) = match direction {
-            Direction::Observation { variable, weight, deviation } => {
+        let own = match direction {
+            Direction::Observation { variable, weight, .. } => {
                 let pushed = -weight * scale[variable as usize];
                 push.columns[variable as usize] = pushed;
                 pushed_columns.push((variable, pushed));
-                (weight * deviation, weight)
+                weight
             }
             Direction::Exact(variable) => {
-                let mut score = 0.0;
-                for (row, place) in problem.column(variable) {
-                    let pushed = -self.values[*place as usize] / scale[variable as usize];
-                    push.rows[*row as usize] = pushed;
-                    pushed_rows.push((*row, pushed));
-                    score += self.multipliers[*row as usize] * pushed;
+                for (row, pushed) in self.pushed_rows(problem, variable) {
+                    push.rows[row as usize] = pushed;
+                    pushed_rows.push((row, pushed));
                 }
-                (score, 0.0)
+                0.0
             }
         };
+        let score = self.score(problem, direction);
         let mut answer = Vectors::zeros(analysis);
         let factor = self.real.get_or_insert_with(|| self.factor.real());
         factor.solve(&push, &mut answer)?;
@@ -83,6 +81,27 @@ impl Linearisation {
         }
         let Vectors { columns, rows } = answer;
         Ok(Some(Response { score, columns, rows, pushed_columns, pushed_rows, own }))
+    }
+
+    /// By how much half the sum of squares would fall with the amount of a direction, to first order.
+    pub(crate) fn score(&self, problem: &Problem, direction: Direction) -> f64 {
+        match direction {
+            Direction::Observation { weight, deviation, .. } => weight * deviation,
+            Direction::Exact(variable) => self
+                .pushed_rows(problem, variable)
+                .map(|(row, pushed)| self.multipliers[row as usize] * pushed)
+                .sum(),
+        }
+    }
+
+    /// Where an exact variable's amount stands on the right side of the rows, scaled.
+    fn pushed_rows<'a>(
+        &'a self,
+        problem: &'a Problem,
+        variable: u32,
+    ) -> impl Iterator<Item = (u32, f64)> + 'a {
+        let scale = self.structure.scaling.column[variable as usize];
+        problem.column(variable).iter().map(move |(row, place)| (*row, -self.values[*place as usize] / scale))
     }
 
     /// Whether the equations that follow from others still do.

@@ -36,14 +36,14 @@ pub(crate) fn name(evidence: &Evidence, posterior: &Posterior) -> Vec<Named> {
     let mut named: Vec<Named> = Vec::new();
     while !left.is_empty() {
         let hypothesis = left.remove(0);
+        // A less probable hypothesis with more alternatives may still pass together with them, but not any.
+        if !named.is_empty() && probability(posterior, hypothesis) < NAMED / ODDS {
+            break;
+        }
         let alternatives: Vec<u16> =
             left.iter().copied().filter(|other| alike(evidence, posterior, hypothesis, *other)).collect();
         let next = Named { hypothesis, alternatives };
         if !named.is_empty() && posterior.any(&next.group()) < NAMED {
-            // A less probable hypothesis with more alternatives may still pass together with them.
-            if probability(posterior, hypothesis) < NAMED / ODDS {
-                break;
-            }
             continue;
         }
         left.retain(|other| !next.alternatives.contains(other));

@@ -11,11 +11,11 @@ use std::collections::{BinaryHeap, HashSet};
 
 use super::evidence::Evidence;
 
-/// Sets this much less probable than the best, in logarithms, are left out: together with what they lead to they carry
-/// less than a hundredth.
-const WINDOW: f64 = 8.0;
+/// Sets this much less probable than the best, in logarithms, are left out. One more hypothesis that explains nothing costs
+/// four to six, so that each set that matters stays with all its neighbours.
+const WINDOW: f64 = 6.0;
 /// So many sets are extended at most; a search that ends here says so.
-const MOST_VISITED: usize = 500;
+const MOST_VISITED: usize = 400;
 /// A set has at most so many members.
 const LARGEST_SET: usize = 12;
 /// Sets with less than this share of the best one's weight add nothing to sizes and uncertainties.
@@ -37,6 +37,8 @@ pub(crate) struct Posterior {
     pub(crate) sets: Vec<Set>,
     /// Probability of each hypothesis.
     pub(crate) inclusion: Vec<f64>,
+    /// Probability that both of two are true, row by row.
+    pairs: Vec<f64>,
     /// Whether everything within the window was visited.
     pub(crate) complete: bool,
 }
@@ -107,16 +109,19 @@ impl Posterior {
     fn normalised(mut kept: Vec<Waiting>, best: f64, count: usize, complete: bool) -> Self {
         kept.sort_by(|a, b| b.cmp(a));
         let total: f64 = kept.iter().map(|set| (set.weight - best).exp()).sum();
-        let mut inclusion = vec![0.0; count];
+        let mut pairs = vec![0.0; count * count];
         let set = |Waiting { weight, members }: Waiting| {
             let probability = (weight - best).exp() / total;
-            for member in &members {
-                inclusion[*member as usize] += probability;
+            for a in &members {
+                for b in &members {
+                    pairs[*a as usize * count + *b as usize] += probability;
+                }
             }
             Set { members, probability }
         };
         let sets = kept.into_iter().map(set).collect();
-        Self { sets, inclusion, complete }
+        let inclusion = (0..count).map(|at| pairs[at * count + at]).collect();
+        Self { sets, inclusion, pairs, complete }
     }
 
     /// Probability that at least one of some hypotheses is true.
@@ -127,8 +132,7 @@ impl Posterior {
 
     /// Probability that both of two hypotheses are true.
     pub(crate) fn both(&self, a: u16, b: u16) -> f64 {
-        let holds = |set: &&Set| set.members.contains(&a) && set.members.contains(&b);
-        self.sets.iter().filter(holds).map(|set| set.probability).sum()
+        self.pairs[a as usize * self.inclusion.len() + b as usize]
     }
 
     /// Mean and covariance of the sizes of some hypotheses over the sets that `count`, absent ones being of size zero.

@@ -204,6 +204,82 @@ fn what_no_tag_knows_is_told_on_both_ways_out() {
     assert_eq!(result["balances"][1]["warnings"], serde_json::json!([]));
 }
 
+/// Two meters in one line, each twice: the first of one pair reads 12 t/h high.
+const PAIRS: &str = "time,FT-1,FT-2,FT-3,FT-4,TT-1,TT-2\n2026-03-01 07:00,112,100,99.5,100.3,88,80\n";
+
+/// A line with four flow meters of 1 t/h and two thermometers of 1 K, which nothing leaves in between.
+fn pairs() -> String {
+    let tags = (1..=4).map(|tag| {
+        let stream = if tag < 3 { "into" } else { "out_of" };
+        format!("[tags.FT-{tag}]\nreads = \"{stream}.mass_flow\"\nunit = \"t/h\"\nsigma = \"1 t/h\"\n")
+    });
+    let thermometers = ["into", "out_of"].iter().enumerate().map(|(tag, stream)| {
+        format!(
+            "[tags.TT-{}]\nreads = \"{stream}.temperature\"\nunit = \"degC\"\nsigma = \"0.5 K\"\n",
+            tag + 1
+        )
+    });
+    "format = 1\n[plant]\nname = \"Invented line\"\n[streams.into]\nfluid = \"water\"\nto = \"line.inlet\"\n\
+     [streams.out_of]\nfluid = \"water\"\nfrom = \"line.outlet\"\n[equipment.line]\nkind = \"pipe\"\n\
+     [given]\n\"into.pressure\" = \"6 bar\"\n\"out_of.pressure\" = \"6 bar\"\n"
+        .to_owned()
+        + &tags.chain(thermometers).collect::<String>()
+}
+
+#[test]
+fn findings_are_told_with_their_size_as_a_difference() {
+    let (status, output, errors) = reconcile(&pairs(), PAIRS, &["--periods", "row", "--json"]);
+    assert_eq!((status, errors.as_str()), (0, ""));
+    let result: Value = serde_json::from_str(&output).unwrap();
+    let balance = &result["balances"][0];
+    let findings = balance["findings"].as_array().unwrap();
+    assert_eq!(findings.len(), 2, "{findings:?}");
+    for finding in findings {
+        let keys: Vec<&str> = finding.as_object().unwrap().keys().map(String::as_str).collect();
+        let mut contract =
+            ["kind", "at", "estimate", "sigma", "unit", "probability", "indistinguishable_from"];
+        contract.sort_unstable();
+        assert_eq!(keys, contract);
+        assert!((0.0..=1.0).contains(&finding["probability"].as_f64().unwrap()), "{finding}");
+    }
+    let at = |name: &str| findings.iter().find(|finding| finding["at"] == name);
+    let flow = at("FT-1").unwrap();
+    assert_eq!((&flow["kind"], &flow["unit"]), (&"bias".into(), &"t/h".into()));
+    // The prior of ten sigmas draws the estimate in by some hundredths.
+    assert!((flow["estimate"].as_f64().unwrap() - 12.07).abs() < 0.2, "{flow}");
+    assert!((flow["sigma"].as_f64().unwrap() - (4.0_f64 / 3.0).sqrt()).abs() < 0.05, "{flow}");
+    assert_eq!(flow["indistinguishable_from"], serde_json::json!([]));
+    // Either thermometer may be wrong, and so may the heat balance: a difference of eight degrees is told in kelvin or as heat.
+    let other = findings.iter().find(|finding| finding["at"] != "FT-1").unwrap();
+    let mut suspects: Vec<&str> = other["indistinguishable_from"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .map(|name| name.as_str().unwrap())
+        .collect();
+    suspects.push(if other["kind"] == "loss" {
+        "line.unaccounted_heat"
+    } else {
+        other["at"].as_str().unwrap()
+    });
+    for name in ["TT-1", "TT-2", "line.unaccounted_heat"] {
+        assert!(suspects.contains(&name), "{suspects:?}");
+    }
+    let verdicts: Vec<&Value> =
+        balance["tags"].as_array().unwrap().iter().map(|tag| &tag["verdict"]).collect();
+    assert_eq!(verdicts, ["suspect", "trusted", "trusted", "trusted", "suspect", "suspect"]);
+    assert_eq!(balance["global_test"]["passes"], false);
+    let freedom = |test: &str| balance[test]["degrees_of_freedom"].as_u64().unwrap();
+    assert_eq!(freedom("global_test_after") + 2, freedom("global_test"));
+
+    let (_, output, _) = reconcile(&pairs(), PAIRS, &["--periods", "row", "--json", "--no-search"]);
+    let result: Value = serde_json::from_str(&output).unwrap();
+    let without = &result["balances"][0];
+    assert_eq!(without["findings"], serde_json::json!([]));
+    assert_eq!(without["global_test"], balance["global_test"]);
+    assert_eq!(without["global_test_after"], without["global_test"]);
+}
+
 #[test]
 fn the_report_is_for_people_and_ends_with_the_cautions() {
     let (status, output, errors) = reconcile(PLANT, LOG, BY_ROW);
@@ -304,9 +380,10 @@ fn a_counter_needs_a_version_that_works_out_its_rate() {
 
 #[test]
 fn wrong_usage_is_told_in_a_line() {
-    let not_yet = "this version looks for no errors: add --no-search\n";
-    for arguments in [&[][..], &["--periods", "row"], &["--periods", "steady", "--json"]] {
-        assert_eq!(reconcile(PLANT, LOG, arguments), (2, String::new(), not_yet.to_owned()), "{arguments:?}");
+    for rate in ["0", "1", "-0.1", "5 %", "NaN"] {
+        let (status, output, errors) = reconcile(PLANT, LOG, &[&format!("--false-alarm-rate={rate}")]);
+        assert_eq!((status, output.as_str()), (2, ""), "{rate}");
+        assert!(errors.contains("write a number above 0 and below 1"), "{errors}");
     }
     let arguments = [BY_ROW, &["--from", "2026-10-25 02:30"]].concat();
     let twice = "2026-10-25 02:30 comes twice in the plant's zone, as clocks go back; write 2026-10-25T00:30:00Z or \
@@ -325,7 +402,7 @@ fn help_ends_well_and_names_every_option() {
         Command::new(env!("CARGO_BIN_EXE_meterwright")).args(["reconcile", "--help"]).output().unwrap();
     let (status, help, _) = ended(&output);
     assert_eq!(status, 0);
-    for option in ["--json", "--periods", "--no-search", "--from", "--to"] {
+    for option in ["--json", "--periods", "--no-search", "--false-alarm-rate", "--from", "--to"] {
         assert!(help.contains(option), "{help}");
     }
 }

@@ -7,6 +7,7 @@ use std::path::{Path, PathBuf};
 
 use clap::Args;
 use jiff::tz::TimeZone;
+use meterwright_engine::estimate::Anchor;
 use meterwright_engine::plant::{self, Plant};
 use meterwright_engine::{Balance, CompiledPlant, Fault, Outcome, Position};
 
@@ -34,12 +35,21 @@ pub(super) struct Arguments {
     /// Balance with every tag as it stands and look for no errors
     #[arg(long)]
     no_search: bool,
+    /// Share of error-free balances in which anything is found
+    #[arg(long, value_name = "SHARE", default_value_t = 0.05, value_parser = false_alarm_rate)]
+    false_alarm_rate: f64,
     /// Leave out what comes before this time (RFC 3339, or local time of the plant)
     #[arg(long, value_name = "TIME")]
     from: Option<String>,
     /// Leave out this time and what comes after it
     #[arg(long, value_name = "TIME")]
     to: Option<String>,
+}
+
+/// A share strictly between none and all.
+fn false_alarm_rate(text: &str) -> Result<f64, String> {
+    let share = text.parse().ok().filter(|share: &f64| 0.0 < *share && *share < 1.0);
+    share.ok_or_else(|| "write a number above 0 and below 1, such as 0.05".to_owned())
 }
 
 /// Why there is nothing more to write.
@@ -83,9 +93,6 @@ pub(super) fn run(arguments: &Arguments) -> Status {
 }
 
 fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
-    if !arguments.no_search {
-        return Err(Stop::Usage("this version looks for no errors: add --no-search".to_owned()));
-    }
     let reading = Progress::reading(&arguments.log);
     let input = Input::read(arguments)?;
     let notes = notes(&arguments.log, &input.log);
@@ -99,6 +106,7 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
         compiled: &input.compiled,
         report: &*input.report(arguments.json),
         log: &arguments.log,
+        false_alarm_rate: (!arguments.no_search).then_some(arguments.false_alarm_rate),
         is_for_people: !arguments.json,
     };
     run.balance_all(found, notes)
@@ -227,6 +235,8 @@ struct Run<'r> {
     compiled: &'r CompiledPlant,
     report: &'r dyn Report,
     log: &'r Path,
+    /// Absent where no errors are looked for.
+    false_alarm_rate: Option<f64>,
     is_for_people: bool,
 }
 
@@ -257,7 +267,7 @@ impl Run<'_> {
                 first.warnings.splice(0..0, notes);
             }
             let finished = parallel::map(&batch, |period| {
-                let balance = self.compiled.balance(&period.readings, anchor.as_ref());
+                let balance = self.balance(period, anchor.as_ref());
                 progress.advance();
                 (self.report.balance(period, &balance), not_found(period, &balance))
             });
@@ -268,6 +278,13 @@ impl Run<'_> {
         }
         output.write_all(self.report.tail()).and_then(|()| output.flush()).map_err(Stop::Output)?;
         Ok(tally)
+    }
+
+    fn balance(&self, period: &Period, anchor: Option<&Anchor>) -> Balance {
+        match self.false_alarm_rate {
+            Some(rate) => self.compiled.balance_and_search(&period.readings, anchor, rate),
+            None => self.compiled.balance(&period.readings, anchor),
+        }
     }
 
     /// Writes balances, each with the line about it if it was not found.

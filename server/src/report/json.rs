@@ -6,12 +6,13 @@
 use std::borrow::Cow;
 
 use meterwright_engine::{
-    Balance, GlobalTest, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, TagBalance,
-    TagClass, Verdict,
+    Balance, Finding, FindingKind, GlobalTest, Hypothesis, IndicatorBalance, Label, Outcome, QuantityBalance,
+    QuantityClass, TagBalance, TagClass, Verdict,
 };
 use serde::Serialize;
 use serde::ser::{SerializeMap, Serializer};
 
+use super::number::difference_unit;
 use super::{Labels, Report};
 use crate::period::Period;
 
@@ -34,7 +35,7 @@ impl Report for JsonReport<'_> {
 
     fn balance(&self, period: &Period, balance: &Balance) -> Vec<u8> {
         let mut bytes = Vec::with_capacity(1 << 15);
-        let written = WireBalance::new(self.labels, period, balance)
+        let written = WireBalance::new(&self.labels, period, balance)
             .serialize(&mut serde_json::Serializer::new(&mut bytes));
         debug_assert!(written.is_ok(), "a plain structure with text keys goes into memory without fail");
         bytes
@@ -62,20 +63,19 @@ struct WireBalance<'b> {
     tags: Vec<Read<'b>>,
     givens: Vec<Read<'b>>,
     quantities: Vec<WireQuantity<'b>>,
-    findings: [(); 0],
+    findings: Vec<WireFinding<'b>>,
     indicators: Vec<WireIndicator<'b>>,
     out_of_service: [(); 0],
     warnings: Vec<&'b str>,
 }
 
 impl<'b> WireBalance<'b> {
-    fn new(labels: Labels<'b>, period: &'b Period, balance: &'b Balance) -> Self {
+    fn new(labels: &'b Labels<'b>, period: &'b Period, balance: &'b Balance) -> Self {
         let reason = match &balance.outcome {
             Outcome::Converged => None,
             Outcome::NotRun => Some("it was not run"),
             Outcome::NotFound { reason } => Some(reason.as_str()),
         };
-        let global_test = balance.global_test.map(WireGlobalTest::from);
         let read = |key| move |(label, balance)| Read { key, label, balance };
         Self {
             from: period.from.to_string(),
@@ -83,13 +83,16 @@ impl<'b> WireBalance<'b> {
             converged: reason.is_none(),
             reason,
             iterations: balance.iterations,
-            global_test,
-            // Nothing is looked for, so nothing is taken out.
-            global_test_after: global_test,
+            global_test: balance.global_test.map(WireGlobalTest::from),
+            global_test_after: balance.global_test_after.map(WireGlobalTest::from),
             tags: labels.tags.iter().zip(&balance.tags).map(read("tag")).collect(),
             givens: labels.givens.iter().zip(&balance.givens).map(read("given")).collect(),
             quantities: labels.quantities.iter().zip(&balance.quantities).map(WireQuantity::new).collect(),
-            findings: [],
+            findings: balance
+                .findings
+                .iter()
+                .map(|found| WireFinding::new(&labels.hypotheses, found))
+                .collect(),
             indicators: labels.indicators.iter().zip(&balance.indicators).map(WireIndicator::new).collect(),
             out_of_service: [],
             warnings: period.warnings.iter().chain(&balance.warnings).map(String::as_str).collect(),
@@ -97,7 +100,7 @@ impl<'b> WireBalance<'b> {
     }
 }
 
-#[derive(Clone, Copy, Serialize)]
+#[derive(Serialize)]
 struct WireGlobalTest {
     statistic: f64,
     degrees_of_freedom: u32,
@@ -185,6 +188,46 @@ impl<'b> WireQuantity<'b> {
                 QuantityClass::Unobservable => "unobservable",
             },
         }
+    }
+}
+
+/// A suspected error; its size is a difference and is written in the unit of one.
+#[derive(Serialize)]
+struct WireFinding<'b> {
+    kind: &'static str,
+    at: &'b str,
+    estimate: f64,
+    sigma: f64,
+    unit: Cow<'static, str>,
+    probability: f64,
+    indistinguishable_from: Vec<&'b str>,
+}
+
+impl<'b> WireFinding<'b> {
+    fn new(hypotheses: &[&'b Hypothesis], finding: &Finding) -> Self {
+        let Hypothesis { kind, at, unit, .. } = hypotheses[finding.hypothesis];
+        let alternatives = finding.alternatives.iter();
+        Self {
+            kind: finding_kind(*kind),
+            at,
+            estimate: unit.difference_from_si(finding.estimate),
+            sigma: unit.spread_from_si(finding.sigma),
+            unit: difference_unit(*unit),
+            // A sum of many chances may round to more than one.
+            probability: finding.probability.min(1.0),
+            indistinguishable_from: alternatives
+                .map(|other| hypotheses[other.hypothesis].name.as_str())
+                .collect(),
+        }
+    }
+}
+
+fn finding_kind(kind: FindingKind) -> &'static str {
+    match kind {
+        FindingKind::Bias => "bias",
+        FindingKind::Loss => "loss",
+        FindingKind::Given => "given",
+        FindingKind::Shared => "shared",
     }
 }
 

@@ -5,7 +5,7 @@ mod number;
 mod table;
 mod text;
 
-use meterwright_engine::{Balance, CompiledPlant, Label};
+use meterwright_engine::{Balance, CompiledPlant, Hypothesis, Label};
 
 use crate::period::Period;
 
@@ -24,8 +24,9 @@ pub trait Report: Sync {
     fn tail(&self) -> &'static [u8];
 }
 
-/// Names and units of a plant's tags, soft givens, quantities and indicators, in the order of its balances.
-#[derive(Clone, Copy)]
+/// Names and units of a plant's tags, soft givens, quantities and indicators, in the order of its balances, and of the
+/// errors that its findings name by number.
+#[derive(Clone)]
 pub struct Labels<'p> {
     /// The tags.
     pub tags: &'p [Label],
@@ -35,6 +36,8 @@ pub struct Labels<'p> {
     pub quantities: &'p [Label],
     /// The indicators.
     pub indicators: &'p [Label],
+    /// The errors that are looked for.
+    pub hypotheses: Vec<&'p Hypothesis>,
 }
 
 impl<'p> From<&'p CompiledPlant> for Labels<'p> {
@@ -44,6 +47,7 @@ impl<'p> From<&'p CompiledPlant> for Labels<'p> {
             givens: plant.givens(),
             quantities: plant.quantities(),
             indicators: plant.indicators(),
+            hypotheses: plant.hypotheses().collect(),
         }
     }
 }

@@ -1,5 +1,9 @@
 //! Numbers as people read them: no digit that the uncertainty makes meaningless.
 
+use std::borrow::Cow;
+
+use meterwright_engine::quantity::{Reference, Unit};
+
 /// 97.5 % point of the standard normal distribution: half-width of a 95 % interval in standard deviations.
 pub(super) const HALF_WIDTH: f64 = 1.959964;
 
@@ -28,6 +32,18 @@ pub(super) fn two_digits(uncertainty: f64) -> String {
     written(Some(uncertainty), decimals(Some(uncertainty), uncertainty))
 }
 
+/// Name of the unit of a difference: 1 degC more is 1 K more, and it is no matter what a pressure counts from.
+pub(super) fn difference_unit(unit: Unit) -> Cow<'static, str> {
+    let name = unit.name();
+    match (&*name, unit.reference()) {
+        ("degC", _) => "K".into(),
+        ("%", _) => "pp".into(),
+        (name, Reference::Gauge) => name.strip_suffix('g').unwrap_or(name).to_owned().into(),
+        (name, Reference::Vacuum) => name.strip_suffix(" vac").unwrap_or(name).to_owned().into(),
+        _ => name,
+    }
+}
+
 #[cfg(test)]
 mod tests {
     use super::*;
@@ -42,5 +58,22 @@ mod tests {
         assert_eq!(written(Some(84.5), decimals(None, 84.5)), "84.5000");
         assert_eq!(written(Some(0.0), decimals(None, 0.0)), "0");
         assert_eq!(two_digits(4.08), "4.1");
+    }
+
+    #[test]
+    fn a_difference_has_no_zero_to_count_from() {
+        for (unit, difference) in [
+            ("degC", "K"),
+            ("degF", "degF"),
+            ("%", "pp"),
+            ("barg", "bar"),
+            ("mbar vac", "mbar"),
+            ("t/h", "t/h"),
+            ("kg", "kg"),
+        ] {
+            if let Ok(unit) = Unit::parse(unit) {
+                assert_eq!(difference_unit(unit), difference);
+            }
+        }
     }
 }

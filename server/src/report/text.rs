@@ -2,13 +2,12 @@
 
 use jiff::Timestamp;
 use jiff::tz::TimeZone;
-use meterwright_engine::quantity::Reference;
 use meterwright_engine::{
     Balance, GlobalTest, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, TagBalance,
     TagClass, Verdict,
 };
 
-use super::number::{HALF_WIDTH, decimals, two_digits, written};
+use super::number::{HALF_WIDTH, decimals, difference_unit, two_digits, written};
 use super::table::{Column, WIDTH, table, wrapped};
 use super::{Labels, Report};
 use crate::period::Period;
@@ -80,7 +79,7 @@ impl TextReport<'_> {
             &reads(["Given", "Stated"], self.labels.givens, &balance.givens),
         );
         section(text, "Indicators", &indicators(self.labels.indicators, &balance.indicators));
-        section(text, "Balanced quantities", &quantities(self.labels, &balance.quantities));
+        section(text, "Balanced quantities", &quantities(&self.labels, &balance.quantities));
         let unknown = unknown(self.labels.quantities, &balance.quantities);
         section(text, "What can't be known from these meters", &unknown);
     }
@@ -164,7 +163,7 @@ fn half_width(label: &Label, sigma: Option<f64>) -> String {
 
 fn verdict(label: &Label, balance: &TagBalance) -> String {
     let from = balance.minimum_detectable_bias.map_or_else(String::new, |bias| {
-        format!("from {} {}", two_digits(label.unit.spread_from_si(bias)), difference_unit(label))
+        format!("from {} {}", two_digits(label.unit.spread_from_si(bias)), difference_unit(label.unit))
     });
     match (balance.verdict, balance.class) {
         (Verdict::Suspect, _) => "SUSPECT: the rest disagrees".to_owned(),
@@ -174,19 +173,6 @@ fn verdict(label: &Label, balance: &TagBalance) -> String {
         (Verdict::Unchecked, TagClass::Redundant) => format!("unchecked (would show only {from})"),
         (Verdict::Trusted, TagClass::Redundant) => format!("agrees (would show {from})"),
     }
-}
-
-/// Unit of a difference: 1 degC more is 1 K more, and it is no matter what a pressure counts from.
-fn difference_unit(label: &Label) -> String {
-    let name = label.unit.name();
-    match (&*name, label.unit.reference()) {
-        ("degC", _) => "K",
-        ("%", _) => "pp",
-        (name, Reference::Gauge) => name.strip_suffix('g').unwrap_or(name),
-        (name, Reference::Vacuum) => name.strip_suffix(" vac").unwrap_or(name),
-        (name, Reference::Absolute) => name,
-    }
-    .to_owned()
 }
 
 fn indicators(labels: &[Label], balances: &[IndicatorBalance]) -> String {
@@ -202,7 +188,7 @@ fn indicators(labels: &[Label], balances: &[IndicatorBalance]) -> String {
     ])
 }
 
-fn quantities(labels: Labels<'_>, balances: &[QuantityBalance]) -> String {
+fn quantities(labels: &Labels<'_>, balances: &[QuantityBalance]) -> String {
     let rows =
         labels.quantities.iter().zip(balances).filter(|(_, row)| row.class != QuantityClass::Unobservable);
     let rows: Vec<_> = rows.collect();

@@ -1,8 +1,9 @@
 //! `meterwright reconcile`: a plant file and a log in, balances out.
 
+use std::env;
 use std::fmt::Display;
 use std::fs;
-use std::io::{self, BufWriter, Write};
+use std::io::{self, BufWriter, IsTerminal, Write};
 use std::path::{Path, PathBuf};
 
 use clap::Args;
@@ -104,7 +105,7 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     silent.iter().chain(&found.rejections).chain(&found.summary).for_each(say);
     let run = Run {
         compiled: &input.compiled,
-        report: &*input.report(arguments.json),
+        report: &*input.report(arguments),
         log: &arguments.log,
         false_alarm_rate: (!arguments.no_search).then_some(arguments.false_alarm_rate),
         is_for_people: !arguments.json,
@@ -158,14 +159,20 @@ impl Input {
         Ok(Self { text, plant, compiled, log, window })
     }
 
-    fn report(&self, json: bool) -> Box<dyn Report + '_> {
-        let labels = Labels::from(&self.compiled);
+    fn report(&self, arguments: &Arguments) -> Box<dyn Report + '_> {
+        let labels = Labels { shared: &self.plant.shared, ..Labels::from(&self.compiled) };
         let (plant, revision) = (self.plant.name.value.as_str(), self.plant.revision.as_str());
-        if json {
-            Box::new(JsonReport { plant, revision, labels })
-        } else {
-            Box::new(TextReport { plant, revision, zone: &self.log.expectation().zone, labels })
+        if arguments.json {
+            return Box::new(JsonReport { plant, revision, labels });
         }
+        Box::new(TextReport {
+            plant,
+            revision,
+            zone: &self.log.expectation().zone,
+            labels,
+            is_searched: !arguments.no_search,
+            has_colour: has_colour(),
+        })
     }
 }
 
@@ -173,6 +180,12 @@ fn read(path: &Path) -> Result<String, Stop> {
     let fault =
         |reason: &dyn Display| Stop::Input(vec![format!("{}:1:1: can't be read: {reason}", path.display())]);
     fs::read_to_string(path).map_err(|error| fault(&error))
+}
+
+/// Whether standard output is a terminal that shows colour to somebody who wants it.
+fn has_colour() -> bool {
+    let refused = env::var_os("NO_COLOR").is_some_and(|value| !value.is_empty());
+    io::stdout().is_terminal() && !refused && env::var_os("TERM").is_none_or(|kind| kind != "dumb")
 }
 
 /// The instant that an argument names.

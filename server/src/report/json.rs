@@ -12,7 +12,6 @@ use meterwright_engine::{
 use serde::Serialize;
 use serde::ser::{SerializeMap, Serializer};
 
-use super::number::difference_unit;
 use super::{Labels, Report};
 use crate::period::Period;
 
@@ -88,11 +87,7 @@ impl<'b> WireBalance<'b> {
             tags: labels.tags.iter().zip(&balance.tags).map(read("tag")).collect(),
             givens: labels.givens.iter().zip(&balance.givens).map(read("given")).collect(),
             quantities: labels.quantities.iter().zip(&balance.quantities).map(WireQuantity::new).collect(),
-            findings: balance
-                .findings
-                .iter()
-                .map(|found| WireFinding::new(&labels.hypotheses, found))
-                .collect(),
+            findings: balance.findings.iter().map(|found| WireFinding::new(labels, found)).collect(),
             indicators: labels.indicators.iter().zip(&balance.indicators).map(WireIndicator::new).collect(),
             out_of_service: [],
             warnings: period.warnings.iter().chain(&balance.warnings).map(String::as_str).collect(),
@@ -204,19 +199,20 @@ struct WireFinding<'b> {
 }
 
 impl<'b> WireFinding<'b> {
-    fn new(hypotheses: &[&'b Hypothesis], finding: &Finding) -> Self {
-        let Hypothesis { kind, at, unit, .. } = hypotheses[finding.hypothesis];
+    fn new(labels: &Labels<'b>, finding: &Finding) -> Self {
+        let error = labels.hypotheses[finding.hypothesis];
+        let Hypothesis { kind, at, unit, .. } = error;
         let alternatives = finding.alternatives.iter();
         Self {
             kind: finding_kind(*kind),
             at,
             estimate: unit.difference_from_si(finding.estimate),
             sigma: unit.spread_from_si(finding.sigma),
-            unit: difference_unit(*unit),
+            unit: labels.size_unit(error),
             // A sum of many chances may round to more than one.
             probability: finding.probability.min(1.0),
             indistinguishable_from: alternatives
-                .map(|other| hypotheses[other.hypothesis].name.as_str())
+                .map(|other| labels.hypotheses[other.hypothesis].name.as_str())
                 .collect(),
         }
     }

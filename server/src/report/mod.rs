@@ -1,11 +1,19 @@
 //! Balances as people and scripts read them.
 
+mod findings;
 mod json;
 mod number;
+mod paint;
+mod quantities;
+mod reads;
 mod table;
 mod text;
+mod words;
 
-use meterwright_engine::{Balance, CompiledPlant, Hypothesis, Label};
+use std::borrow::Cow;
+
+use meterwright_engine::plant::{SharedError, Spread};
+use meterwright_engine::{Balance, CompiledPlant, FindingKind, Hypothesis, Label};
 
 use crate::period::Period;
 
@@ -38,6 +46,22 @@ pub struct Labels<'p> {
     pub indicators: &'p [Label],
     /// The errors that are looked for.
     pub hypotheses: Vec<&'p Hypothesis>,
+    /// Errors that several tags have in common, as the plant file states them.
+    pub shared: &'p [SharedError],
+}
+
+impl<'p> Labels<'p> {
+    /// What a shared error is stated as.
+    fn shared(&self, name: &str) -> Option<&'p SharedError> {
+        self.shared.iter().find(|group| group.name.value == name)
+    }
+
+    /// Unit in which the size of an error is written: that of a difference, but per cent for a share of what tags read.
+    fn size_unit(&self, error: &Hypothesis) -> Cow<'static, str> {
+        let is_share = error.kind == FindingKind::Shared
+            && self.shared(&error.at).is_some_and(|group| matches!(group.sigma, Spread::OfReading(_)));
+        if is_share { error.unit.name() } else { number::difference_unit(error.unit) }
+    }
 }
 
 impl<'p> From<&'p CompiledPlant> for Labels<'p> {
@@ -48,6 +72,7 @@ impl<'p> From<&'p CompiledPlant> for Labels<'p> {
             quantities: plant.quantities(),
             indicators: plant.indicators(),
             hypotheses: plant.hypotheses().collect(),
+            shared: &[],
         }
     }
 }

@@ -4,18 +4,18 @@ use std::borrow::Cow;
 
 use meterwright_engine::quantity::{Reference, Unit};
 
-/// 97.5 % point of the standard normal distribution: half-width of a 95 % interval in standard deviations.
-pub(super) const HALF_WIDTH: f64 = 1.959964;
-
 /// Digits after the point that show two digits of an uncertainty; enough for six digits of `value` where there is none.
 pub(super) fn decimals(uncertainty: Option<f64>, value: f64) -> usize {
-    let (size, digits) = match uncertainty {
-        Some(uncertainty) if uncertainty > 0.0 && uncertainty.is_finite() => (uncertainty, 2),
-        _ => (value.abs(), 6),
+    // Digits after the first.
+    let (size, more): (f64, u8) = match uncertainty {
+        Some(uncertainty) if uncertainty > 0.0 && uncertainty.is_finite() => (uncertainty, 1),
+        _ => (value.abs(), 5),
     };
-    // The place of the first digit; a zero has none and is written short.
-    let place = if size > 0.0 && size.is_finite() { size.log10().floor() as i32 } else { digits - 1 };
-    usize::try_from(digits - 1 - place).unwrap_or(0).min(9)
+    // The place of the first digit once it is rounded, as 0.0996 to 0.10; a zero has none and is written short.
+    let rounded = format!("{size:.*e}", usize::from(more));
+    let place = rounded.split_once('e').and_then(|(_, place)| place.parse().ok()).filter(|_| size > 0.0);
+    let place = place.unwrap_or(i32::from(more));
+    usize::try_from(i32::from(more) - place).unwrap_or(0).min(9)
 }
 
 /// A number with so many decimals; nothing for nothing. Never `-0`.
@@ -23,6 +23,16 @@ pub(super) fn written(value: Option<f64>, decimals: usize) -> String {
     let text = value.map_or_else(String::new, |value| format!("{value:.decimals$}"));
     match text.strip_prefix('-') {
         Some(digits) if digits.chars().all(|c| matches!(c, '0' | '.')) => digits.to_owned(),
+        _ => text,
+    }
+}
+
+/// A value with the digits that its uncertainty leaves; where it has none, as many of six digits as say something.
+pub(super) fn shown(value: f64, uncertainty: Option<f64>) -> String {
+    let text = written(Some(value), decimals(uncertainty, value));
+    match uncertainty {
+        Some(uncertainty) if uncertainty > 0.0 => text,
+        _ if text.contains('.') => text.trim_end_matches('0').trim_end_matches('.').to_owned(),
         _ => text,
     }
 }
@@ -50,14 +60,14 @@ mod tests {
 
     #[test]
     fn a_value_has_the_digits_its_uncertainty_leaves() {
-        let shown = |value: f64, sigma: f64| written(Some(value), decimals(Some(sigma), value));
-        assert_eq!(shown(412.123, 1.3), "412.1");
-        assert_eq!(shown(412.123, 13.0), "412");
-        assert_eq!(shown(0.0123412, 0.00012), "0.01234");
+        assert_eq!(shown(412.123, Some(1.3)), "412.1");
+        assert_eq!(shown(412.123, Some(13.0)), "412");
+        assert_eq!(shown(0.0123412, Some(0.00012)), "0.01234");
+        assert_eq!(shown(80.0, Some(0.5)), "80.00");
         assert_eq!(written(Some(-0.001), 1), "0.0");
-        assert_eq!(written(Some(84.5), decimals(None, 84.5)), "84.5000");
-        assert_eq!(written(Some(0.0), decimals(None, 0.0)), "0");
-        assert_eq!(two_digits(4.08), "4.1");
+        assert_eq!([84.5, 0.0, 100.0].map(|value| shown(value, None)), ["84.5", "0", "100"]);
+        assert_eq!(shown(6.0, Some(0.0)), "6");
+        assert_eq!([4.08, 0.996, 0.0999, 99.7].map(two_digits), ["4.1", "1.0", "0.10", "100"]);
     }
 
     #[test]

@@ -1,12 +1,14 @@
 //! Plain text tables and paragraphs of a limited width.
 
+use std::borrow::Cow;
+
 /// Width of everything that people read, in characters.
 pub(super) const WIDTH: usize = 100;
 
 /// One column of a table.
 pub(super) struct Column {
     /// Its heading.
-    pub(super) heading: &'static str,
+    pub(super) heading: Cow<'static, str>,
     /// Whether its cells end at one line, as numbers do.
     pub(super) is_number: bool,
     /// Columns of the largest rank are left out first where the table is too wide; those of rank 0 never are.
@@ -16,12 +18,12 @@ pub(super) struct Column {
 }
 
 impl Column {
-    pub(super) fn words(heading: &'static str, cells: Vec<String>) -> Self {
-        Self { heading, is_number: false, rank: 0, cells }
+    pub(super) fn words(heading: impl Into<Cow<'static, str>>, cells: Vec<String>) -> Self {
+        Self { heading: heading.into(), is_number: false, rank: 0, cells }
     }
 
-    pub(super) fn numbers(heading: &'static str, cells: Vec<String>) -> Self {
-        Self { heading, is_number: true, rank: 0, cells }
+    pub(super) fn numbers(heading: impl Into<Cow<'static, str>>, cells: Vec<String>) -> Self {
+        Self { heading: heading.into(), is_number: true, rank: 0, cells }
     }
 
     pub(super) fn of_rank(self, rank: u8) -> Self {
@@ -29,13 +31,13 @@ impl Column {
     }
 
     fn width(&self) -> usize {
-        self.cells.iter().map(|cell| length(cell)).chain([length(self.heading)]).max().unwrap_or(0)
+        self.cells.iter().map(|cell| length(cell)).chain([length(&self.heading)]).max().unwrap_or(0)
     }
 }
 
 /// The columns side by side under their headings, two spaces between, as many as fit; where even the columns that are never
-/// left out are too wide, the last cell of a row stands below it.
-pub(super) fn table(mut columns: Vec<Column>) -> String {
+/// left out are too wide, the last cell of a row stands below it. First the headings, then one text a row.
+pub(super) fn table(mut columns: Vec<Column>) -> Vec<String> {
     while columns.iter().map(|column| column.width() + 2).sum::<usize>() > WIDTH + 2 {
         match columns.iter().map(|column| column.rank).max() {
             Some(rank) if rank > 0 => columns.retain(|column| column.rank != rank),
@@ -44,13 +46,13 @@ pub(super) fn table(mut columns: Vec<Column>) -> String {
     }
     let widths: Vec<usize> = columns.iter().map(Column::width).collect();
     let rows = columns.iter().map(|column| column.cells.len()).max().unwrap_or(0);
-    let heading = columns.iter().map(|column| column.heading);
-    let mut text = line(&columns, &widths, heading);
+    let heading = columns.iter().map(|column| &*column.heading);
+    let mut lines = vec![line(&columns, &widths, heading)];
     for row in 0..rows {
         let cells = columns.iter().map(|column| column.cells.get(row).map_or("", String::as_str));
-        text += &line(&columns, &widths, cells);
+        lines.push(line(&columns, &widths, cells));
     }
-    text
+    lines
 }
 
 fn line<'c>(columns: &[Column], widths: &[usize], cells: impl Iterator<Item = &'c str>) -> String {
@@ -108,14 +110,14 @@ mod tests {
     fn columns_that_do_not_fit_are_left_out_from_the_least_important() {
         let wide = "x".repeat(60);
         let columns = vec![column("A", "1"), column("B", &wide).of_rank(2), column("C", &wide).of_rank(1)];
-        assert_eq!(table(columns), format!("A  C\n1  {wide}\n"));
+        assert_eq!(table(columns).concat(), format!("A  C\n1  {wide}\n"));
     }
 
     #[test]
     fn a_last_cell_that_does_not_fit_stands_below() {
         let columns = vec![column("A", &"x".repeat(90)), column("B", "0123456789")];
         let expected = format!("A{}  B\n{}\n      0123456789\n", " ".repeat(89), "x".repeat(90));
-        assert_eq!(table(columns), expected);
+        assert_eq!(table(columns).concat(), expected);
     }
 
     #[test]

@@ -184,6 +184,23 @@ impl CompiledPlant {
         Ok(live)
     }
 
+    /// Score and information of every hypothesis, SI.
+    #[cfg(test)]
+    pub(super) fn evidence(
+        &self,
+        observations: &Observations,
+        solution: &mut Solution,
+    ) -> Vec<(&Hypothesis, (f64, f64))> {
+        let all: Vec<u32> = (0..self.candidates.len() as u32).collect();
+        let live = self.live(observations, solution, &all).unwrap();
+        let one = |(at, number): (usize, &u32)| {
+            let size = live.size[at];
+            let told = (live.evidence.score[at] / size, live.evidence.own(at) / (size * size));
+            (&self.candidates[*number as usize].hypothesis, told)
+        };
+        live.candidate.iter().enumerate().map(one).collect()
+    }
+
     /// The direction of a hypothesis, and the sigma of its observation.
     fn direction(&self, observations: &Observations, x: &[f64], source: Source) -> Option<(Direction, f64)> {
         if let Source::Exact(variable) = source {

@@ -217,3 +217,35 @@ sigma = "1 %"
         assert!(told.iter().any(|message| message.contains(part)), "{part} is missing from {told:?}");
     }
 }
+
+/// S. Narasimhan and C. Jordache, Data Reconciliation and Gross Error Detection, Gulf (2000), chapter 1, data set B: the
+/// generalised likelihood ratios of all six biases and four leaks, and the estimates of the biases, computed
+/// independently of this project by two methods that agree.
+#[test]
+fn scores_and_information_give_the_published_likelihood_ratios() {
+    const NETWORK: (&str, &str) = (
+        include_str!("../../../../tests/published/net_4.toml"),
+        include_str!("../../../../tests/published/net_4.csv"),
+    );
+    let set_b = (
+        NETWORK.0,
+        &*format!("{}\n{}", NETWORK.1.lines().next().unwrap(), NETWORK.1.lines().nth(2).unwrap()),
+    );
+    let (compiled, readings, anchor) = case(set_b);
+    let observations = compiled.observe(&readings);
+    let mut solution = compiled.solve(&observations.situation, Some(&anchor)).unwrap();
+    let ratios = [1.570_817, 10.270_417, 0.244_017, 4.001_667, 2.884_267, 6.040_067];
+    let biases = [1.535, 3.925, -0.605, -2.450, 2.080, -3.010];
+    let leaks = [1.570_817, 13.2496, 0.3844, 6.040_067];
+    for (source, evidence) in compiled.evidence(&observations, &mut solution) {
+        let (ratio, estimate) = (evidence.0 * evidence.0 / evidence.1, evidence.0 / evidence.1 * 3.6);
+        let name = source.name.as_str();
+        let number: usize = name.trim_start_matches(|c: char| !c.is_ascii_digit()).parse().unwrap();
+        if name.starts_with("FT") {
+            assert!((ratio - ratios[number - 1]).abs() < 1e-6, "{name}: {ratio}");
+            assert!((estimate - biases[number - 1]).abs() < 1e-6, "{name}: {estimate}");
+        } else {
+            assert!((ratio - leaks[number - 1]).abs() < 1e-6, "{name}: {ratio}");
+        }
+    }
+}

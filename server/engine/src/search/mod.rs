@@ -10,6 +10,8 @@ mod hypothesis;
 mod limit;
 mod naming;
 mod posterior;
+#[cfg(test)]
+mod tests;
 
 pub(crate) use evidence::Evidence;
 pub(crate) use hypothesis::{Candidate, Parts, Source, candidates};

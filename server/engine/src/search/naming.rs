@@ -25,6 +25,8 @@ const NAMED: f64 = 0.5;
 const SAME_DIRECTION: f64 = 0.9999;
 /// Posterior odds within this are no reason to prefer one.
 const ODDS: f64 = 10.0;
+/// Hypotheses whose test directions correlate less than this speak of different things.
+const RELATED: f64 = 0.3;
 /// Two hypotheses explain the same if they are true together in less than this share of the rarer's probability.
 const TOGETHER: f64 = 0.5;
 
@@ -58,9 +60,8 @@ fn probability(posterior: &Posterior, hypothesis: u16) -> f64 {
 
 /// Whether a hypothesis explains what another does about as well.
 fn alike(evidence: &Evidence, posterior: &Posterior, one: u16, other: u16) -> bool {
-    if evidence.correlation(one as usize, other as usize).abs() >= SAME_DIRECTION {
-        return true;
-    }
+    let correlation = evidence.correlation(one as usize, other as usize).abs();
     let (p, q) = (probability(posterior, one), probability(posterior, other));
-    q * ODDS >= p && posterior.both(one, other) < TOGETHER * q
+    let as_well = q * ODDS >= p && posterior.both(one, other) < TOGETHER * q;
+    correlation >= SAME_DIRECTION || correlation >= RELATED && as_well
 }

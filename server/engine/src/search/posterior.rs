@@ -3,8 +3,8 @@
 //! A set's weight against the empty one is the product of its prior odds and its Bayes factor,
 //! `exp(u' (M + I)^-1 u / 2) / sqrt(det(M + I))` over its members, all in units of their prior standard deviations (the
 //! linear model with normal sizes; for instance A. Gelman et al., Bayesian Data Analysis, 3rd ed. 2013, chapter 14).
-//! Sets are visited best first: each is extended by every hypothesis and shortened by every member, and whatever lies
-//! within [`WINDOW`] of the best is visited in turn.
+//! Sets are visited best first: each is extended by every hypothesis and shortened by every member. Whatever lies within
+//! [`WINDOW`] of the best is kept, and within [`VISITED`] visited in turn.
 
 use std::cmp::Ordering;
 use std::collections::{BinaryHeap, HashSet};
@@ -13,13 +13,16 @@ use super::evidence::Evidence;
 
 /// Sets this much less probable than the best, in logarithms, are left out. One more hypothesis that explains nothing costs
 /// four to six, so that each set that matters stays with all its neighbours.
-const WINDOW: f64 = 6.0;
+const WINDOW: f64 = 6.5;
+/// Sets this much less probable than the best are kept but not visited: what they lead to seldom comes back into the
+/// window.
+const VISITED: f64 = 5.0;
 /// So many sets are extended at most; a search that ends here says so.
-const MOST_VISITED: usize = 400;
+const MOST_VISITED: usize = 200;
 /// A set has at most so many members.
 const LARGEST_SET: usize = 12;
 /// Sets with less than this share of the best one's weight add nothing to sizes and uncertainties.
-const NEGLIGIBLE: f64 = 1e-4;
+const NEGLIGIBLE: f64 = 1e-3;
 
 /// A set of hypotheses.
 #[derive(Clone, Debug, PartialEq)]
@@ -39,7 +42,7 @@ pub(crate) struct Posterior {
     pub(crate) inclusion: Vec<f64>,
     /// Probability that both of two are true, row by row.
     pairs: Vec<f64>,
-    /// Whether everything within the window was visited.
+    /// Whether everything that should be visited was.
     pub(crate) complete: bool,
 }
 
@@ -85,22 +88,21 @@ impl Posterior {
             evidence,
             known: HashSet::from([Vec::new()]),
             waiting: BinaryHeap::from([Waiting { weight: 0.0, members: Vec::new() }]),
+            extended: HashSet::new(),
             kept: Vec::new(),
             best: 0.0,
             elimination: Elimination::default(),
         };
-        let mut visited = 0;
         while let Some(next) = visit.waiting.pop() {
-            if next.weight < visit.best - WINDOW || visited == MOST_VISITED {
+            if next.weight < visit.best - VISITED || visit.extended.len() >= MOST_VISITED {
                 visit.waiting.push(next);
                 break;
             }
-            visited += 1;
-            visit.extend(&next.members, next.weight);
-            visit.shorten(&next.members);
+            visit.extend(&next.members);
+            visit.exchange(&next.members);
             visit.kept.push(next);
         }
-        let complete = visit.waiting.peek().is_none_or(|next| next.weight < visit.best - WINDOW);
+        let complete = visit.waiting.peek().is_none_or(|next| next.weight < visit.best - VISITED);
         let (best, mut kept) = (visit.best, visit.kept);
         kept.extend(visit.waiting.into_vec().into_iter().filter(|set| set.weight >= best - WINDOW));
         Self::normalised(kept, best, evidence.len(), complete)
@@ -174,6 +176,8 @@ struct Visit<'e> {
     evidence: &'e Evidence,
     known: HashSet<Vec<u16>>,
     waiting: BinaryHeap<Waiting>,
+    /// Sets that were extended.
+    extended: HashSet<Vec<u16>>,
     kept: Vec<Waiting>,
     best: f64,
     elimination: Elimination,
@@ -190,11 +194,12 @@ impl Visit<'_> {
     }
 
     /// Offers a set with each other hypothesis.
-    fn extend(&mut self, members: &[u16], weight: f64) {
-        if members.len() == LARGEST_SET {
+    fn extend(&mut self, members: &[u16]) {
+        if members.len() == LARGEST_SET || !self.extended.insert(members.to_vec()) {
             return;
         }
         self.elimination.of(self.evidence, members);
+        let weight = self.elimination.weight;
         for next in 0..self.evidence.len() as u16 {
             if members.contains(&next) {
                 continue;
@@ -208,14 +213,17 @@ impl Visit<'_> {
         }
     }
 
-    /// Offers a set without each of its members.
-    fn shorten(&mut self, members: &[u16]) {
+    /// Offers a set without each of its members, and with each other hypothesis in that one's place: two sets that
+    /// explain as much may have nothing between them that does.
+    fn exchange(&mut self, members: &[u16]) {
         for gone in members.iter().filter(|_| members.len() > 1) {
-            let rest: Vec<u16> = members.iter().copied().filter(|member| member != gone).collect();
-            if !self.known.contains(&rest) {
-                let weight = self.evidence.weight(&rest);
-                self.offer(rest, weight);
+            if self.extended.len() >= MOST_VISITED {
+                return;
             }
+            let rest: Vec<u16> = members.iter().copied().filter(|member| member != gone).collect();
+            self.extend(&rest);
+            let weight = self.evidence.weight(&rest);
+            self.offer(rest, weight);
         }
     }
 }

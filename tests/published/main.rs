@@ -8,6 +8,7 @@
 )]
 #![allow(clippy::format_push_string, reason = "plant files are put together once, where the words matter")]
 
+mod check;
 mod covariance;
 mod false_alarms;
 mod heat_meter;

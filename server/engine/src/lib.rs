@@ -22,5 +22,5 @@ pub use balance::{
     Alternative, Balance, Finding, FindingKind, GlobalTest, Hypothesis, IndicatorBalance, Label, Outcome,
     QuantityBalance, QuantityClass, Reading, TagBalance, TagClass, Verdict,
 };
-pub use compiled_plant::CompiledPlant;
+pub use compiled_plant::{Assumption, Basis, Check, CompiledPlant, Meter};
 pub use fault::{Fault, Position};

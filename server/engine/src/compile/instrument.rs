@@ -41,6 +41,11 @@ pub(crate) struct Uncertainty {
 }
 
 impl Uncertainty {
+    /// Whether it vanishes with the reading.
+    pub(crate) fn is_relative(self) -> bool {
+        self.absolute == 0.0
+    }
+
     /// Adds up what a tag states.
     pub(crate) fn of(tag: &Tag) -> Self {
         tag.sigma.iter().fold(Self { of_reading: 0.0, absolute: 0.0 }, |sum, part| match *part {

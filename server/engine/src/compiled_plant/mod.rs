@@ -1,8 +1,11 @@
 //! The door: a plant compiled once, then one balance for each set of readings.
 
+mod check;
 mod search;
 #[cfg(test)]
 mod tests;
+
+pub use check::{Assumption, Basis, Check, Meter};
 
 use crate::balance::{
     Balance, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, Reading, TagBalance, TagClass,
@@ -14,6 +17,7 @@ use crate::estimate::{self, Anchor, Failure, Observation, Problem, Situation, So
 use crate::fault::Fault;
 use crate::kkt::FactorError;
 use crate::plant::Plant;
+use crate::quantity::{Dimension, Unit};
 use crate::search::{Candidate, Parts, candidates};
 use crate::verdict::{self, Judged, Limits, Residual};
 
@@ -34,6 +38,7 @@ pub struct CompiledPlant {
     surroundings: (f64, f64),
     situation: Situation,
     limits: Limits,
+    units: Vec<(Dimension, Unit)>,
     candidates: Vec<Candidate>,
     chances: search::Chances,
 }
@@ -93,6 +98,7 @@ impl CompiledPlant {
             quantity_variables,
             surroundings,
             limits: Limits::default(),
+            units: plant.display_units.clone(),
             candidates,
             chances: search::Chances::default(),
         })
@@ -146,6 +152,15 @@ impl CompiledPlant {
             .map_err(|failure| failure.to_string())
             .and_then(|solution| self.report(&observations, &solution).map_err(|error| error.to_string()));
         result.unwrap_or_else(|reason| self.not_found(&observations, reason))
+    }
+
+    /// The unit that a quantity is shown in.
+    fn unit_of(&self, dimension: Dimension, role: VariableRole) -> Unit {
+        if dimension == Dimension::TEMPERATURE && role != VariableRole::Temperature {
+            return Unit::default_for_difference(dimension);
+        }
+        let chosen = self.units.iter().find(|(of, _)| *of == dimension);
+        chosen.map_or_else(|| Unit::default_for(dimension), |(_, unit)| *unit)
     }
 
     fn not_found(&self, observations: &Observations, reason: String) -> Balance {

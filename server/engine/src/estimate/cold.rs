@@ -52,6 +52,19 @@ pub fn solve_cold(
     Ok((solution, anchor))
 }
 
+/// The state near a guess that closes the equations best.
+pub(crate) fn onto_equations(
+    problem: &Problem,
+    situation: &Situation,
+    guess: Vec<f64>,
+    forms: &[Form],
+) -> Vec<f64> {
+    let (weight, _) = situation.weights();
+    let rough = Anchor::new(problem, guess, forms.to_vec(), weight);
+    let near = proximal(problem, situation, &rough.scale, rough.x.clone(), forms, FAINT);
+    near.map_or(rough.x, |near| near.x)
+}
+
 /// Proximal steps from `x` with every equation softened by `softening`.
 pub(super) fn proximal(
     problem: &Problem,

@@ -1,5 +1,6 @@
 //! The problem linearised at its solution: covariances, and what can't be known. It outlives the solve.
 
+use std::collections::HashMap;
 use std::sync::Arc;
 
 use meterwright_thermo::{Dual, Scalar};
@@ -96,6 +97,19 @@ impl Linearisation {
     /// Number of equations that follow from others.
     pub fn dropped_rows(&self) -> usize {
         self.structure.analysis.dropped_rows().len()
+    }
+
+    /// For each variable that a direction which nothing determines moves: by how much, for each such direction.
+    pub(crate) fn null_rows(&self) -> HashMap<u32, Vec<(u32, f64)>> {
+        let mut rows: HashMap<u32, Vec<(u32, f64)>> = HashMap::new();
+        for (number, vector) in (0..).zip(self.structure.analysis.null_vectors()) {
+            for (column, part) in &vector.parts {
+                if self.touched[*column as usize] {
+                    rows.entry(*column).or_default().push((number, *part));
+                }
+            }
+        }
+        rows
     }
 
     /// For each variable whether nothing determines it.

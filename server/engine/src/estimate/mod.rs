@@ -21,6 +21,7 @@ mod start;
 mod step;
 mod structure;
 
+pub(crate) use cold::onto_equations;
 pub use cold::solve_cold;
 pub(crate) use direction::{Direction, Response};
 pub use failure::Failure;
@@ -29,3 +30,4 @@ pub use problem::{Observation, Problem, Situation};
 pub use scaling::Anchor;
 pub use solve::{Solution, solve, solve_from};
 pub(crate) use start::cold_start;
+pub(crate) use structure::linearised;

@@ -126,7 +126,7 @@ enum Trouble<'a> {
 }
 
 impl<'a> Search<'a> {
-    fn new(
+    pub(super) fn new(
         problem: &'a Problem,
         situation: &'a Situation,
         anchor: &'a Anchor,
@@ -391,7 +391,7 @@ impl<'a> Search<'a> {
         Ok(())
     }
 
-    fn finish(&mut self, linearisation: Linearisation) -> Solution {
+    pub(super) fn finish(&mut self, linearisation: Linearisation) -> Solution {
         Solution {
             x: std::mem::take(&mut self.x),
             forms: std::mem::take(&mut self.forms),

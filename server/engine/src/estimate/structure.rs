@@ -2,6 +2,7 @@
 
 use std::sync::Arc;
 
+use crate::equation::Form;
 use crate::kkt::{Analysis, Column, Diagonal, Factor, FactorError};
 
 use super::bounds::Bounded;
@@ -9,13 +10,35 @@ use super::cache::{Key, Structure};
 use super::evaluation::{Evaluation, NoValue};
 use super::failure::Failure;
 use super::linearisation::Linearisation;
+use super::problem::{Problem, Situation};
 use super::scaling::{Anchor, Scaling};
-use super::solve::Search;
+use super::solve::{Search, Solution};
 
 /// So many variables that the equations hardly see are held before a search is given up.
 const MOST_HELD: usize = 12;
 /// Each equation closes to this much of its largest term.
 const CLOSURE: f64 = 1e-9;
+
+/// The problem linearised at any state, as if it were a solution.
+///
+/// # Errors
+/// [`Failure`] where the rows have no value there.
+pub(crate) fn linearised(
+    problem: &Problem,
+    situation: &Situation,
+    x: Vec<f64>,
+    forms: Vec<Form>,
+) -> Result<Solution, Failure> {
+    let (weight, _) = situation.weights();
+    let anchor = Anchor::new(problem, x.clone(), forms.clone(), weight);
+    let mut search = Search::new(problem, situation, &anchor, x, forms);
+    let structure = search.structure(true)?;
+    search.here.clone_from(&structure.evaluation);
+    structure.scaling.jacobian(&search.here, &mut search.values);
+    search.multipliers = vec![0.0; problem.rows()];
+    let linearisation = search.linearise(structure)?;
+    Ok(search.finish(linearisation))
+}
 
 impl Search<'_> {
     /// Holds pressures, temperatures and enthalpies whose uncertainty exceeds what they can span, one after the other, the

@@ -444,6 +444,53 @@ fn help_ends_well_and_names_every_option() {
     }
 }
 
+/// What the program writes on standard output when all is well.
+fn written(arguments: &[&str]) -> String {
+    let output = Command::new(env!("CARGO_BIN_EXE_meterwright")).args(arguments).output().unwrap();
+    let (status, text, errors) = ended(&output);
+    assert_eq!((status, errors.as_str()), (0, ""), "{arguments:?}");
+    text
+}
+
+#[test]
+fn shells_learn_every_command_and_option() {
+    for shell in ["bash", "zsh", "fish"] {
+        let script = written(&["completions", shell]);
+        for word in ["reconcile", "completions", "manual", "no-search", "false-alarm-rate", "whole"] {
+            assert!(script.contains(word), "{shell} doesn't learn {word}");
+        }
+    }
+    let unknown =
+        Command::new(env!("CARGO_BIN_EXE_meterwright")).args(["completions", "ash"]).output().unwrap();
+    assert_eq!(ended(&unknown).0, 2);
+}
+
+#[test]
+fn bash_takes_the_completions_and_uses_them() {
+    let Ok(probe) = Command::new("bash").arg("--version").output() else { return };
+    assert!(probe.status.success());
+    let folder = Folder::new();
+    let script = folder.write("completions.bash", written(&["completions", "bash"]));
+    let ask = format!(
+        "source '{}'; COMP_WORDS=(meterwright reconcile --per); COMP_CWORD=2; \
+         _meterwright meterwright --per reconcile; echo \"${{COMPREPLY[@]}}\"",
+        script.display()
+    );
+    let output = Command::new("bash").args(["-c", &ask]).output().unwrap();
+    let (status, completed, errors) = ended(&output);
+    assert_eq!((status, completed.as_str()), (0, "--periods\n"), "{errors}");
+}
+
+#[test]
+fn the_manual_is_a_page_for_man() {
+    let whole = written(&["manual"]);
+    assert!(whole.contains(".TH meterwright 1") && whole.contains("meterwright\\-reconcile(1)"), "{whole}");
+    let command = written(&["manual", "reconcile"]);
+    for option in ["\\-\\-json", "\\-\\-periods", "\\-\\-no\\-search", "\\-\\-false\\-alarm\\-rate"] {
+        assert!(command.contains(option), "{command}");
+    }
+}
+
 #[test]
 fn a_log_of_which_nothing_converges_ends_with_three() {
     // What is said to be known contradicts itself: more leaves to the left than comes, and nothing can flow backwards.

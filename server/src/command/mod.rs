@@ -1,10 +1,13 @@
 //! The command line.
 
+mod completions;
 mod found;
+mod manual;
 mod progress;
 mod reconcile;
 
 use std::ffi::OsString;
+use std::io::{self, Write};
 use std::process::ExitCode;
 
 use clap::{Parser, Subcommand};
@@ -20,6 +23,8 @@ struct Arguments {
 #[derive(Debug, Subcommand)]
 enum Command {
     Reconcile(reconcile::Arguments),
+    Completions(completions::Arguments),
+    Manual(manual::Arguments),
 }
 
 /// How the program ends; the numbers are a contract with scripts.
@@ -37,10 +42,28 @@ impl From<Status> for ExitCode {
     }
 }
 
+/// Writes a text that is made from the arguments' own description to standard output. A reader that goes away is no
+/// failure.
+fn put(text: &[u8]) -> Status {
+    let mut output = io::stdout().lock();
+    match output.write_all(text).and_then(|()| output.flush()) {
+        Err(error) if error.kind() != io::ErrorKind::BrokenPipe => {
+            let _ = writeln!(io::stderr(), "the text can't be written: {error}");
+            Status::WrongInput
+        }
+        _ => Status::Done,
+    }
+}
+
 /// Runs the program with its arguments, the first of which is its own name.
 pub fn run(arguments: impl IntoIterator<Item = OsString>) -> ExitCode {
     match Arguments::try_parse_from(arguments) {
-        Ok(Arguments { command: Command::Reconcile(arguments) }) => reconcile::run(&arguments).into(),
+        Ok(Arguments { command }) => match command {
+            Command::Reconcile(arguments) => reconcile::run(&arguments),
+            Command::Completions(arguments) => completions::run(&arguments),
+            Command::Manual(arguments) => manual::run(&arguments),
+        }
+        .into(),
         Err(message) => {
             // Help that is asked for ends well; where neither stream can be written to, nobody reads it.
             let _ = message.print();

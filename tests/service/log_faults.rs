@@ -33,7 +33,7 @@ fn everything_that_is_wrong_is_said_at_once_with_its_place() {
 fn digits_in_groups_are_refused() {
     assert_eq!(
         faults("time;FT-1;TT-2\n2026-03-01T06:00:00Z;1.234,5;520,5\n"),
-        ["2:2: FT-1: `1.234,5` is not a number"]
+        ["2:2: FT-1: `1.234,5` is not a number; write it without separators of thousands"]
     );
 }
 

@@ -9,3 +9,4 @@ mod steady_periods;
 #[cfg(target_os = "linux")]
 mod streams;
 mod times;
+mod wrong_files;

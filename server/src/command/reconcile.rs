@@ -176,10 +176,18 @@ impl Input {
     }
 }
 
+/// The text of the plant file.
 fn read(path: &Path) -> Result<String, Stop> {
-    let fault =
-        |reason: &dyn Display| Stop::Input(vec![format!("{}:1:1: can't be read: {reason}", path.display())]);
-    fs::read_to_string(path).map_err(|error| fault(&error))
+    let fault = |at: Position, reason: &dyn Display| {
+        Stop::Input(vec![format!("{}:{}:{}: {reason}", path.display(), at.line, at.column)])
+    };
+    let start = Position { line: 1, column: 1 };
+    let bytes = fs::read(path).map_err(|error| fault(start, &format_args!("can't be read: {error}")))?;
+    String::from_utf8(bytes).map_err(|error| {
+        let good = String::from_utf8_lossy(&error.as_bytes()[..error.utf8_error().valid_up_to()]);
+        let reason = "what stands here is no UTF-8 text; save the plant file in the encoding UTF-8";
+        fault(Position::of(&good, good.len()), &reason)
+    })
 }
 
 /// Whether standard output is a terminal that shows colour to somebody who wants it.

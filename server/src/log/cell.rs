@@ -41,6 +41,14 @@ pub(super) enum DecimalMark {
 }
 
 impl DecimalMark {
+    /// What then separates thousands, where anything does.
+    pub(super) fn of_groups(self) -> char {
+        match self {
+            Self::Point => ',',
+            Self::Comma => '.',
+        }
+    }
+
     /// The number a text says, infinite and not-a-number ones included. Digits in groups are refused: whether `1,234`
     /// is a thousand or one is decided for the whole log, never cell by cell.
     pub(super) fn number(self, text: &str) -> Option<f64> {

@@ -85,7 +85,7 @@ pub enum Problem {
         expected: String,
     },
     /// A row that is cut off or has too much.
-    #[error("this row has {found} cells where the first row names {expected} columns")]
+    #[error("this row has {found} cells where the first row names {expected} columns{}", split_numbers(*found, *expected))]
     Width {
         /// Cells of this row.
         found: usize,
@@ -125,6 +125,15 @@ pub enum Problem {
     /// A header and nothing below it.
     #[error("the log has no samples")]
     NoSamples,
+}
+
+/// Why a row may have nearly twice its cells, as the end of a sentence.
+fn split_numbers(found: usize, expected: usize) -> &'static str {
+    if expected > 1 && found == 2 * expected - 1 {
+        "; a decimal comma ends a cell as well: put such numbers in quotes, or semicolons or tabs between the cells"
+    } else {
+        ""
+    }
 }
 
 /// The first thousand faults and the number of those beyond: a wrong file of a million lines stays readable.

@@ -236,6 +236,12 @@ impl Problem {
             DecimalMark::Comma if DecimalMark::Point.number(&text).is_some() => {
                 "; numbers of this log have a decimal comma"
             }
+            _ if WrittenTime::of_text(&text).is_some() => {
+                " but a time; do the headings stand over the right columns?"
+            }
+            _ if text.contains('.') && mark.number(&text.replace(mark.of_groups(), "")).is_some() => {
+                "; write it without separators of thousands"
+            }
             _ => "",
         };
         Self::NotANumber { tag: tag.to_owned(), text, hint }

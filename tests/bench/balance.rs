@@ -68,9 +68,25 @@ fn main() {
         );
         sizes.push((f64::from(count as u32), micros(low)));
     }
+    with_indicators();
     let ((small, fast), (large, slow)) = (sizes[0], sizes[sizes.len() - 1]);
     println!("growth from 1 to 64 units: n^{:.2}", (slow / fast).ln() / (large / small).ln());
     peer();
+}
+
+/// The unit once more with the indicators that its machines have ready-made.
+fn with_indicators() {
+    let (text, readings) = units::joined(1);
+    let plant = parse(&text).expect("the unit is a sound plant file");
+    let compiled = CompiledPlant::compile_with_indicators(&plant).expect("the unit compiles");
+    let readings: Vec<Option<Reading>> =
+        compiled.tags().iter().map(|tag| readings.get(&tag.name).copied().map(Reading::single)).collect();
+    let anchor = compiled.anchor(&readings);
+    let (median, low) = measure(4000, || {
+        black_box(compiled.balance(black_box(&readings), anchor.as_ref()));
+    });
+    let (indicators, median, low) = (compiled.indicators().len(), micros(median), micros(low));
+    println!("reheat unit, all {indicators} indicators that are ready-made or its own   {median:>11.1}  {low:>8.1}");
 }
 
 /// The peer, where there is a Python that has it.

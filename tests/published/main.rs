@@ -12,6 +12,7 @@ mod check;
 mod covariance;
 mod false_alarms;
 mod heat_meter;
+mod indicators;
 mod networks;
 mod nonlinear;
 mod oracles;

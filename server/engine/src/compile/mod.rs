@@ -4,6 +4,7 @@ mod formula_row;
 mod instrument;
 mod knowledge;
 mod network;
+mod plant_indicators;
 mod quantities;
 mod shaft;
 
@@ -48,8 +49,8 @@ pub(crate) struct Loss {
     pub(crate) heat: Option<u32>,
 }
 
-/// Compiles a plant.
-pub(crate) fn compile(plant: &Plant) -> Result<Compiled, Vec<Fault>> {
+/// Compiles a plant, with ready-made indicators or only those of the plant file.
+pub(crate) fn compile(plant: &Plant, ready_made: bool) -> Result<Compiled, Vec<Fault>> {
     let mut faults = Vec::new();
     let network = network::connect(plant, &mut faults);
     if !faults.is_empty() {
@@ -69,10 +70,13 @@ pub(crate) fn compile(plant: &Plant) -> Result<Compiled, Vec<Fault>> {
     }
     let mut naming = quantities::Naming::new(plant, &network.machines, system);
     shaft::build(plant, &mut naming, &mut faults);
-    let indicators = naming.indicators(&mut faults);
+    let mut indicators = naming.indicators(&mut faults);
     let known = knowledge::state(plant, &mut naming, &mut faults);
     if !faults.is_empty() {
         return Err(in_order(faults));
+    }
+    if ready_made {
+        indicators.extend(naming.ready_made());
     }
     let mut system = naming.into_system();
     saturated_pairs(&mut system);

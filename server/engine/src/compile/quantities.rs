@@ -3,6 +3,7 @@
 use std::collections::{HashMap, HashSet};
 
 use super::formula_row::FormulaRow;
+use super::plant_indicators;
 use crate::balance::Label;
 use crate::equipment::{Knowledge, Machine, System, VariableRole};
 use crate::fault::{Fault, suggestion};
@@ -233,6 +234,44 @@ impl<'p> Naming<'p> {
             }
         }
         made
+    }
+
+    /// What every balance shows unasked: the indicators of each machine's kind and those of the whole plant, but for those
+    /// that the plant file has itself. They only define, and what they need besides is listed no more than before.
+    pub(super) fn ready_made(&mut self) -> Vec<(Label, u32)> {
+        let before = self.system.variables.len();
+        let machines: Vec<&Machine> =
+            self.plant.equipment.iter().filter_map(|equipment| self.machine(&equipment.name.value)).collect();
+        let mut made = Vec::new();
+        for machine in &machines {
+            for quantity in machine.kind.indicators(machine) {
+                if let Ok(id) = self.machine_quantity(machine, &quantity) {
+                    made.push((self.ready_made_label(&format!("{}.{quantity}", machine.name), id), id));
+                }
+            }
+        }
+        let name = "turbine_heat_rate";
+        let is_free = !self.owners.contains(name);
+        let heat_rate = plant_indicators::turbine_heat_rate(name, &machines, &mut self.system);
+        if let Some(id) = heat_rate.filter(|_| is_free) {
+            let unit = Unit::parse("kJ/kWh").unwrap_or_else(|_| Unit::default_for(Dimension::RATIO));
+            made.push((Label { name: name.into(), quantity: None, unit }, id));
+        }
+        for variable in &mut self.system.variables[before..] {
+            variable.listed = false;
+        }
+        made
+    }
+
+    fn ready_made_label(&self, name: &str, id: u32) -> Label {
+        let dimension = self.system.variables[id as usize].dimension;
+        let chosen = self.plant.display_units.iter().find(|(shown, _)| *shown == dimension);
+        let unit = match (dimension, chosen) {
+            (Dimension::TEMPERATURE, _) => Unit::default_for_difference(dimension),
+            (_, Some((_, unit))) => *unit,
+            (_, None) => Unit::default_for(dimension),
+        };
+        Label { name: name.to_owned(), quantity: None, unit }
     }
 
     fn indicator_label(&self, indicator: &Indicator, id: u32) -> Label {

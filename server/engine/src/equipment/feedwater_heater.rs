@@ -74,6 +74,10 @@ impl Kind for FeedwaterHeater {
         }
     }
 
+    fn indicators(&self, _machine: &Machine) -> Vec<String> {
+        ["ua", "terminal_difference", "drain_approach"].map(String::from).to_vec()
+    }
+
     fn guess(&self, machine: &Machine, guess: &mut Guess<'_>) {
         guess.level_pressures_at(machine, &["hot_inlet", "hot_outlet", "vent"]);
         guess.level_pressures_at(machine, &["cold_inlet", "cold_outlet"]);

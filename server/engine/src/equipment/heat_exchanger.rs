@@ -62,6 +62,10 @@ impl Kind for HeatExchanger {
         exchanger::derive(machine, quantity, hot, system)
     }
 
+    fn indicators(&self, _machine: &Machine) -> Vec<String> {
+        ["ua"].map(String::from).to_vec()
+    }
+
     fn guess(&self, machine: &Machine, guess: &mut Guess<'_>) {
         guess.even_out_pressures(machine);
         if guess.desperate {

@@ -232,6 +232,11 @@ pub trait Kind: Sync {
         None
     }
 
+    /// Quantities of a machine that tell how well it does: indicators that every balance shows unasked.
+    fn indicators(&self, _machine: &Machine) -> Vec<String> {
+        Vec::new()
+    }
+
     /// Fills in pressures and temperatures round the machine for the start of a solve.
     fn guess(&self, machine: &Machine, guess: &mut Guess<'_>) {
         guess.even_out(machine);

@@ -73,6 +73,10 @@ impl Kind for Pump {
         }
     }
 
+    fn indicators(&self, _machine: &Machine) -> Vec<String> {
+        ["efficiency"].map(String::from).to_vec()
+    }
+
     fn guess(&self, machine: &Machine, guess: &mut Guess<'_>) {
         guess.even_out_temperatures(machine);
         if guess.desperate {

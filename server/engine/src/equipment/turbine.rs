@@ -96,6 +96,14 @@ impl Kind for Turbine {
         }
     }
 
+    fn indicators(&self, machine: &Machine) -> Vec<String> {
+        let Some(order) = order(machine) else { return Vec::new() };
+        match &order[1..] {
+            [_] => vec!["efficiency".into()],
+            ends => ends.iter().map(|end| format!("efficiency.{}", end.name())).collect(),
+        }
+    }
+
     fn guess(&self, machine: &Machine, guess: &mut Guess<'_>) {
         if let Some(order) = order(machine) {
             let streams: Vec<usize> = order.iter().map(|connection| connection.stream).collect();

@@ -86,7 +86,9 @@ fn with_indicators() {
         black_box(compiled.balance(black_box(&readings), anchor.as_ref()));
     });
     let (indicators, median, low) = (compiled.indicators().len(), micros(median), micros(low));
-    println!("reheat unit, all {indicators} indicators that are ready-made or its own   {median:>11.1}  {low:>8.1}");
+    println!(
+        "reheat unit, all {indicators} indicators that are ready-made or its own   {median:>11.1}  {low:>8.1}"
+    );
 }
 
 /// The peer, where there is a Python that has it.

@@ -32,6 +32,11 @@ impl Random {
         ((self.0 >> 33) as f64 + 1.0) / f64::from(1_u32 << 31)
     }
 
+    fn below(&mut self, count: usize) -> usize {
+        self.uniform();
+        (self.0 >> 33) as usize % count
+    }
+
     fn normal(&mut self) -> f64 {
         (-2.0 * self.uniform().ln()).sqrt() * (std::f64::consts::TAU * self.uniform()).cos()
     }
@@ -54,7 +59,7 @@ fn readings(
 ) -> Vec<Option<Reading>> {
     let mut noise: Vec<f64> = truth.tags.iter().map(|_| random.normal()).collect();
     for _ in 0..wrong {
-        let at = (random.uniform() * noise.len() as f64) as usize % noise.len();
+        let at = random.below(noise.len());
         let sign = if random.uniform() > 0.5 { 1.0 } else { -1.0 };
         noise[at] += sign * (5.0 + 10.0 * random.uniform());
     }

@@ -38,6 +38,10 @@ before touching an instrument. Local codes and licensed practice come first.
 const TEST_BEFORE: &str =
     "Test is the change in its own standard deviations before the findings are accounted for.";
 
+/// Said where the test still fails because only one of the alternatives among which an error is shared out is left out.
+const SHARED_OUT: &str =
+    "the balance shares an error out among what the readings can't tell apart, so this says little.";
+
 impl Report for TextReport<'_> {
     fn head(&self) -> Vec<u8> {
         let revision: String = self.revision.chars().take(12).collect();
@@ -114,12 +118,15 @@ impl TextReport<'_> {
         let Some(before) = &balance.global_test else { return found };
         let after = balance.global_test_after.as_ref().filter(|_| !balance.findings.is_empty());
         match after {
-            Some(after) => format!(
-                "{found} {}; with what is found accounted for {}: {}",
-                test(before),
-                figures(after),
-                meaning(after)
-            ),
+            Some(after) => {
+                let shared = balance.findings.iter().any(|finding| !finding.alternatives.is_empty());
+                let meaning = if shared && !after.passes { SHARED_OUT } else { meaning(after) };
+                format!(
+                    "{found} {}; with what is found accounted for {}: {meaning}",
+                    test(before),
+                    figures(after)
+                )
+            }
             None => format!("{found} {}: {}", test(before), meaning(before)),
         }
     }

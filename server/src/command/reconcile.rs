@@ -70,9 +70,6 @@ struct Tally {
     converged: usize,
 }
 
-/// So many periods are balanced before they are written: enough to keep all cores busy, few enough to be held at once.
-const BATCH: usize = 64;
-
 pub(super) fn run(arguments: &Arguments) -> Status {
     match reconcile(arguments) {
         Ok(Tally { converged: 0, .. }) => Status::NotOneConverged,
@@ -279,21 +276,21 @@ impl Run<'_> {
         let mut tally = Tally::default();
         let mut notes = Some(notes);
         output.write_all(&self.report.head()).map_err(Stop::Output)?;
-        loop {
-            let mut batch = self.batch(&mut periods)?;
-            if batch.is_empty() {
-                break;
-            }
-            if let (Some(notes), Some(first)) = (notes.take(), batch.first_mut()) {
-                first.warnings.splice(0..0, notes);
-            }
-            let finished = parallel::map(&batch, |period| {
-                let balance = self.balance(period, anchor.as_ref());
-                progress.advance();
-                (self.report.balance(period, &balance), not_found(period, &balance))
-            });
-            progress.aside(|| self.write(&mut output, &finished, &mut tally)).map_err(Stop::Output)?;
-        }
+        let periods = periods.map(|period| {
+            let mut period = period.map_err(|faults| Stop::Input(log_faults(self.log, &faults)))?;
+            period.warnings.splice(0..0, notes.take().into_iter().flatten());
+            Ok(period)
+        });
+        let finish = |period: Period| {
+            let balance = self.balance(&period, anchor.as_ref());
+            progress.advance();
+            (self.report.balance(&period, &balance), not_found(&period, &balance))
+        };
+        parallel::in_order(periods, finish, |(text, reason)| {
+            progress
+                .aside(|| self.write(&mut output, &text, reason.as_deref(), &mut tally))
+                .map_err(Stop::Output)
+        })?;
         if tally.made == 0 && self.is_for_people {
             found.rejections.iter().try_for_each(|line| writeln!(output, "{line}")).map_err(Stop::Output)?;
         }
@@ -308,31 +305,22 @@ impl Run<'_> {
         }
     }
 
-    /// Writes balances, each with the line about it if it was not found.
+    /// Writes a balance, and on standard error why it was not found.
     fn write(
         &self,
         output: &mut impl Write,
-        finished: &[(Vec<u8>, Option<String>)],
+        text: &[u8],
+        reason: Option<&str>,
         tally: &mut Tally,
     ) -> io::Result<()> {
-        for (text, reason) in finished {
-            if tally.made > 0 {
-                output.write_all(self.report.between())?;
-            }
-            output.write_all(text)?;
-            tally.made += 1;
-            tally.converged += usize::from(reason.is_none());
-            reason.iter().for_each(say);
+        if tally.made > 0 {
+            output.write_all(self.report.between())?;
         }
+        output.write_all(text)?;
+        tally.made += 1;
+        tally.converged += usize::from(reason.is_none());
+        reason.iter().for_each(say);
         output.flush()
-    }
-
-    fn batch(
-        &self,
-        periods: &mut impl Iterator<Item = Result<Period, LogFaults>>,
-    ) -> Result<Vec<Period>, Stop> {
-        let batch: Result<_, LogFaults> = periods.take(BATCH).collect();
-        batch.map_err(|faults| Stop::Input(log_faults(self.log, &faults)))
     }
 }
 

@@ -33,7 +33,7 @@ impl Report for JsonReport<'_> {
     }
 
     fn balance(&self, period: &Period, balance: &Balance) -> Vec<u8> {
-        let mut bytes = Vec::with_capacity(1 << 15);
+        let mut bytes = Vec::with_capacity(1 << 16);
         let written = WireBalance::new(&self.labels, period, balance)
             .serialize(&mut serde_json::Serializer::new(&mut bytes));
         debug_assert!(written.is_ok(), "a plain structure with text keys goes into memory without fail");

@@ -329,7 +329,7 @@ fn the_report_begins_with_what_is_found_and_says_what_it_can_t_tell_apart() {
     let flat = output.split_whitespace().collect::<Vec<_>>().join(" ");
     for said in [
         "2 errors found. Global test ",
-        "the balance shares an error out among what the readings can't tell apart, so this says little.",
+        "as a whole the readings agree within their uncertainties.",
         "FT-1 reads 11.9 t/h high (± 1.1 t/h; probability above 0.99). It reads 112.0 t/h; with this accounted for, \
          into.mass_flow is ",
         "These readings can't tell this from TT-",

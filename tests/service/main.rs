@@ -1,5 +1,6 @@
 //! The service from outside: logs as files, periods, and the program as people and scripts run it.
 
+mod check_command;
 mod command_line;
 mod files;
 mod log_faults;

@@ -1,7 +1,9 @@
 //! The command line.
 
+mod check;
 mod completions;
 mod found;
+mod input;
 mod manual;
 mod progress;
 mod reconcile;
@@ -22,6 +24,7 @@ struct Arguments {
 
 #[derive(Debug, Subcommand)]
 enum Command {
+    Check(check::Arguments),
     Reconcile(reconcile::Arguments),
     Completions(completions::Arguments),
     Manual(manual::Arguments),
@@ -59,6 +62,7 @@ fn put(text: &[u8]) -> Status {
 pub fn run(arguments: impl IntoIterator<Item = OsString>) -> ExitCode {
     match Arguments::try_parse_from(arguments) {
         Ok(Arguments { command }) => match command {
+            Command::Check(arguments) => check::run(&arguments),
             Command::Reconcile(arguments) => reconcile::run(&arguments),
             Command::Completions(arguments) => completions::run(&arguments),
             Command::Manual(arguments) => manual::run(&arguments),

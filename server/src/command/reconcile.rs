@@ -1,23 +1,19 @@
 //! `meterwright reconcile`: a plant file and a log in, balances out.
 
 use std::env;
-use std::fmt::Display;
-use std::fs;
 use std::io::{self, BufWriter, IsTerminal, Write};
 use std::path::{Path, PathBuf};
 
 use clap::Args;
-use jiff::tz::TimeZone;
 use meterwright_engine::estimate::Anchor;
-use meterwright_engine::plant::{self, Plant};
-use meterwright_engine::{Balance, CompiledPlant, Fault, Outcome, Position};
+use meterwright_engine::{Balance, CompiledPlant, Outcome};
 
 use super::Status;
 use super::found::{Found, PeriodChoice};
+use super::input::{Input, Sources, Stop, log_faults, notes, plant_faults, say};
 use super::progress::Progress;
-use crate::log::{Expectation, Instants, Log, LogFaults, WrittenTime, instants};
 use crate::parallel;
-use crate::period::{Period, Window};
+use crate::period::Period;
 use crate::report::{JsonReport, Labels, Report, TextReport};
 
 /// Balance the readings of a log within their uncertainties
@@ -53,16 +49,6 @@ fn false_alarm_rate(text: &str) -> Result<f64, String> {
     share.ok_or_else(|| "write a number above 0 and below 1, such as 0.05".to_owned())
 }
 
-/// Why there is nothing more to write.
-enum Stop {
-    /// The input is wrong: one line a fault, with its place.
-    Input(Vec<String>),
-    /// The arguments are wrong.
-    Usage(String),
-    /// The output can't be written.
-    Output(io::Error),
-}
-
 /// How many balances were made and how many of them converged.
 #[derive(Default)]
 struct Tally {
@@ -74,25 +60,18 @@ pub(super) fn run(arguments: &Arguments) -> Status {
     match reconcile(arguments) {
         Ok(Tally { converged: 0, .. }) => Status::NotOneConverged,
         Ok(_) => Status::Done,
-        Err(Stop::Output(error)) if error.kind() == io::ErrorKind::BrokenPipe => Status::Done,
-        Err(Stop::Output(error)) => {
-            say(format_args!("the result can't be written: {error}"));
-            Status::WrongInput
-        }
-        Err(Stop::Input(faults)) => {
-            faults.iter().for_each(say);
-            Status::WrongInput
-        }
-        Err(Stop::Usage(message)) => {
-            say(format_args!("{message}"));
-            Status::WrongUsage
-        }
+        Err(stop) => stop.told(),
     }
 }
 
 fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     let reading = Progress::reading(&arguments.log);
-    let input = Input::read(arguments)?;
+    let input = Input::read(&Sources {
+        plant: &arguments.plant,
+        log: &arguments.log,
+        from: arguments.from.as_deref(),
+        to: arguments.to.as_deref(),
+    })?;
     let notes = notes(&arguments.log, &input.log);
     reading.aside(|| notes.iter().for_each(say));
     let found = Found::of(arguments.periods, &input.plant, &input.log, input.window);
@@ -102,7 +81,7 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     silent.iter().chain(&found.rejections).chain(&found.summary).for_each(say);
     let run = Run {
         compiled: &input.compiled,
-        report: &*input.report(arguments),
+        report: &*report(&input, arguments),
         log: &arguments.log,
         false_alarm_rate: (!arguments.no_search).then_some(arguments.false_alarm_rate),
         is_for_people: !arguments.json,
@@ -110,80 +89,20 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     run.balance_all(found, notes)
 }
 
-/// A plant file and a log in which nothing is wrong.
-struct Input {
-    text: String,
-    plant: Plant,
-    compiled: CompiledPlant,
-    log: Log,
-    window: Window,
-}
-
-impl Input {
-    /// Reads both, and tells what is wrong with both at once.
-    fn read(arguments: &Arguments) -> Result<Self, Stop> {
-        let text = read(&arguments.plant)?;
-        let at = |faults: Vec<Fault>| plant_faults(&arguments.plant, &text, &faults);
-        let (plant, mut faults) = plant::parse_leniently(&text);
-        let Some(plant) = plant else { return Err(Stop::Input(at(faults))) };
-        let compiled = CompiledPlant::compile(&plant);
-        if !faults.is_empty() {
-            faults.extend(compiled.err().into_iter().flatten());
-            return Err(Stop::Input(at(faults)));
-        }
-        let expectation = match Expectation::of(&plant) {
-            Ok(expectation) => expectation,
-            Err(fault) => {
-                return Err(Stop::Input(at(compiled.err().into_iter().flatten().chain([fault]).collect())));
-            }
-        };
-        let instant = |argument: &Option<String>| time(argument.as_deref(), &expectation.zone);
-        let window = Window { from: instant(&arguments.from)?, to: instant(&arguments.to)? };
-        let log =
-            Log::open(&arguments.log, expectation).map_err(|faults| log_faults(&arguments.log, &faults));
-        let (compiled, log) = match (compiled.map_err(at), log) {
-            (Ok(compiled), Ok(log)) => (compiled, log),
-            (compiled, log) => {
-                return Err(Stop::Input(
-                    [compiled.err(), log.err()].into_iter().flatten().flatten().collect(),
-                ));
-            }
-        };
-        let counters = counters(&plant, &log);
-        if !counters.is_empty() {
-            return Err(Stop::Input(plant_faults(&arguments.plant, &text, &counters)));
-        }
-        Ok(Self { text, plant, compiled, log, window })
+/// What the balances are written with.
+fn report<'i>(input: &'i Input, arguments: &Arguments) -> Box<dyn Report + 'i> {
+    let labels = Labels { shared: &input.plant.shared, ..Labels::from(&input.compiled) };
+    let (plant, revision) = (input.plant.name.value.as_str(), input.plant.revision.as_str());
+    if arguments.json {
+        return Box::new(JsonReport { plant, revision, labels });
     }
-
-    fn report(&self, arguments: &Arguments) -> Box<dyn Report + '_> {
-        let labels = Labels { shared: &self.plant.shared, ..Labels::from(&self.compiled) };
-        let (plant, revision) = (self.plant.name.value.as_str(), self.plant.revision.as_str());
-        if arguments.json {
-            return Box::new(JsonReport { plant, revision, labels });
-        }
-        Box::new(TextReport {
-            plant,
-            revision,
-            zone: &self.log.expectation().zone,
-            labels,
-            is_searched: !arguments.no_search,
-            has_colour: has_colour(),
-        })
-    }
-}
-
-/// The text of the plant file.
-fn read(path: &Path) -> Result<String, Stop> {
-    let fault = |at: Position, reason: &dyn Display| {
-        Stop::Input(vec![format!("{}:{}:{}: {reason}", path.display(), at.line, at.column)])
-    };
-    let start = Position { line: 1, column: 1 };
-    let bytes = fs::read(path).map_err(|error| fault(start, &format_args!("can't be read: {error}")))?;
-    String::from_utf8(bytes).map_err(|error| {
-        let good = String::from_utf8_lossy(&error.as_bytes()[..error.utf8_error().valid_up_to()]);
-        let reason = "what stands here is no UTF-8 text; save the plant file in the encoding UTF-8";
-        fault(Position::of(&good, good.len()), &reason)
+    Box::new(TextReport {
+        plant,
+        revision,
+        zone: &input.log.expectation().zone,
+        labels,
+        is_searched: !arguments.no_search,
+        has_colour: has_colour(),
     })
 }
 
@@ -191,61 +110,6 @@ fn read(path: &Path) -> Result<String, Stop> {
 fn has_colour() -> bool {
     let refused = env::var_os("NO_COLOR").is_some_and(|value| !value.is_empty());
     io::stdout().is_terminal() && !refused && env::var_os("TERM").is_none_or(|kind| kind != "dumb")
-}
-
-/// The instant that an argument names.
-fn time(argument: Option<&str>, zone: &TimeZone) -> Result<Option<jiff::Timestamp>, Stop> {
-    let Some(text) = argument else { return Ok(None) };
-    let no_time = || crate::log::TimeError::NotATime(text.to_owned());
-    let written = WrittenTime::of_text(text).ok_or_else(no_time);
-    match written.and_then(|written| instants(written, zone)) {
-        Ok(Instants::One(instant)) => Ok(Some(instant)),
-        Ok(Instants::Two(earlier, later)) => Err(Stop::Usage(format!(
-            "{text} comes twice in the plant's zone, as clocks go back; write {earlier} or {later}"
-        ))),
-        Err(error) => Err(Stop::Usage(error.to_string())),
-    }
-}
-
-/// Counters of which the log has samples.
-fn counters(plant: &Plant, log: &Log) -> Vec<Fault> {
-    let tags = plant.tags.iter().zip(&log.expectation().tags).zip(log.sample_counts());
-    tags.filter(|((_, expected), count)| expected.is_counter && **count > 0)
-        .map(|((tag, _), _)| Fault {
-            span: tag.name.span,
-            message: format!(
-                "`{}` is a counter: what it reads is the rate over a period, which this version doesn't work out; leave its \
-                 column out of the log",
-                tag.name.value
-            ),
-        })
-        .collect()
-}
-
-fn plant_faults(path: &Path, text: &str, faults: &[Fault]) -> Vec<String> {
-    let line = |fault: &Fault| {
-        let Position { line, column } = Position::of(text, fault.span.start);
-        format!("{}:{line}:{column}: {fault}", path.display())
-    };
-    let mut faults = faults.to_vec();
-    faults.sort();
-    faults.iter().map(line).collect()
-}
-
-fn log_faults(path: &Path, faults: &LogFaults) -> Vec<String> {
-    let mut lines: Vec<String> =
-        faults.first.iter().map(|fault| format!("{}:{fault}", path.display())).collect();
-    if faults.beyond > 0 {
-        lines.push(format!("{}: and {} faults more", path.display(), faults.beyond));
-    }
-    lines
-}
-
-fn notes(path: &Path, log: &Log) -> Vec<String> {
-    let line = |note: &crate::log::Note| {
-        format!("{}:{}:{}: warning: {}", path.display(), note.line, note.column, note.message)
-    };
-    log.notes().iter().map(line).collect()
 }
 
 /// Everything it takes to balance period after period and write them down.
@@ -331,9 +195,4 @@ fn not_found(period: &Period, balance: &Balance) -> Option<String> {
         Outcome::NotRun => Some(format!("{}: not balanced", period.from)),
         Outcome::NotFound { reason } => Some(format!("{}: not converged: {reason}", period.from)),
     }
-}
-
-/// A line on standard error; where that can't be written to, nobody reads it.
-fn say(line: impl Display) {
-    let _ = writeln!(io::stderr(), "{line}");
 }

@@ -1,5 +1,6 @@
 //! Balances as people and scripts read them.
 
+mod check;
 mod findings;
 mod json;
 mod number;
@@ -17,6 +18,7 @@ use meterwright_engine::{Balance, CompiledPlant, FindingKind, Hypothesis, Label}
 
 use crate::period::Period;
 
+pub use check::CheckReport;
 pub use json::JsonReport;
 pub use text::TextReport;
 

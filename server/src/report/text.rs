@@ -29,7 +29,7 @@ pub struct TextReport<'p> {
     pub has_colour: bool,
 }
 
-const CAUTIONS: &[u8] = b"
+pub(super) const CAUTIONS: &str = "
 Advice to engineers, not a protection, custody-transfer or safety system. Isolate and lock out
 before touching an instrument. Local codes and licensed practice come first.
 ";
@@ -37,10 +37,6 @@ before touching an instrument. Local codes and licensed practice come first.
 /// Said where the balance shown accounts for findings.
 const TEST_BEFORE: &str =
     "Test is the change in its own standard deviations before the findings are accounted for.";
-
-/// Said where the test still fails because only one of the alternatives among which an error is shared out is left out.
-const SHARED_OUT: &str =
-    "the balance shares an error out among what the readings can't tell apart, so this says little.";
 
 impl Report for TextReport<'_> {
     fn head(&self) -> Vec<u8> {
@@ -67,7 +63,7 @@ impl Report for TextReport<'_> {
     }
 
     fn tail(&self) -> &'static [u8] {
-        CAUTIONS
+        CAUTIONS.as_bytes()
     }
 }
 
@@ -119,8 +115,7 @@ impl TextReport<'_> {
         let after = balance.global_test_after.as_ref().filter(|_| !balance.findings.is_empty());
         match after {
             Some(after) => {
-                let shared = balance.findings.iter().any(|finding| !finding.alternatives.is_empty());
-                let meaning = if shared && !after.passes { SHARED_OUT } else { meaning(after) };
+                let meaning = meaning(after);
                 format!(
                     "{found} {}; with what is found accounted for {}: {meaning}",
                     test(before),

@@ -107,7 +107,7 @@ impl CompiledPlant {
             }
         }
         let assumptions = self.assumptions(&balance, &mut solution)?;
-        let mut warnings = self.doubtful_sigmas();
+        let mut warnings: Vec<String> = self.doubtful_sigmas().into_iter().collect();
         warnings.extend(self.weather(observations, &balance, &mut solution)?);
         let exact = observations.situation.exact.iter().filter(|exact| exact.is_some()).count();
         let dependent = solution.linearisation.dropped_rows();
@@ -149,7 +149,7 @@ impl CompiledPlant {
                     .not_found(observations, "the equations have no value at a guessed state".into()),
                 assumptions: Vec::new(),
                 meters: Vec::new(),
-                warnings: self.doubtful_sigmas(),
+                warnings: self.doubtful_sigmas().into_iter().collect(),
             };
         };
         check.balance.outcome = Outcome::NotRun;
@@ -238,7 +238,7 @@ impl CompiledPlant {
     }
 
     /// Tags whose uncertainty can come out as zero.
-    fn doubtful_sigmas(&self) -> Vec<String> {
+    fn doubtful_sigmas(&self) -> Option<String> {
         let doubtful = |instrument: &&Instrument| {
             let tag = &instrument.tag;
             let zero = tag.unit.value.to_si(0.0);
@@ -249,14 +249,19 @@ impl CompiledPlant {
                 && tag.cut_off.is_none()
                 && reaches_zero
         };
-        let told = |instrument: &Instrument| {
+        let names: Vec<&str> = self
+            .instruments
+            .iter()
+            .filter(doubtful)
+            .map(|instrument| instrument.label.name.as_str())
+            .collect();
+        (!names.is_empty()).then(|| {
             format!(
-                "the uncertainty of {} is a share of its reading alone: at a reading of zero it is zero, and the reading is \
-                 left out; add a share of its span or a cut-off",
-                instrument.label.name
+                "the uncertainty of these tags is a share of their reading alone: {}; at a reading of zero it is zero, and \
+                 the reading is left out; add a share of the span or a cut-off",
+                names.join(", ")
             )
-        };
-        self.instruments.iter().filter(doubtful).map(told).collect()
+        })
     }
 
     /// What the weather does where gauge pressures rest on a station pressure that is taken for exact.

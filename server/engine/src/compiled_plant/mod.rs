@@ -4,22 +4,24 @@ mod check;
 mod search;
 #[cfg(test)]
 mod tests;
+mod told;
 
 pub use check::{Assumption, Basis, Check, Meter};
 
 use crate::balance::{
     Balance, IndicatorBalance, Label, Outcome, QuantityBalance, QuantityClass, Reading, TagBalance, TagClass,
-    Verdict,
 };
 use crate::compile::{self, Compiled, Exclusion, Instrument, Observed, SharedGroup, SoftGiven};
 use crate::equipment::{Machine, VariableRole};
-use crate::estimate::{self, Anchor, Failure, Observation, Problem, Situation, Solution, Variances};
+use crate::estimate::{self, Anchor, Failure, Observation, Problem, Situation, Solution};
 use crate::fault::Fault;
 use crate::kkt::FactorError;
 use crate::plant::Plant;
 use crate::quantity::{Dimension, Unit};
 use crate::search::{Candidate, Parts, candidates};
 use crate::verdict::{self, Judged, Limits, Residual};
+
+use told::{Largest, Told, kept};
 
 /// A plant, ready to be balanced. Thread-safe: balances take it by shared reference, and the same readings from the
 /// same anchor give the same bits whatever else runs.
@@ -427,104 +429,3 @@ impl Observations {
         instruments.iter().zip(&self.tags).filter_map(one).collect()
     }
 }
-
-/// Sizes beyond which an uncertainty says nothing.
-struct Largest {
-    mass_flow: f64,
-    power: f64,
-}
-
-/// A solution with its uncertainties, ready to be told.
-struct Told<'a> {
-    roles: &'a [VariableRole],
-    solution: &'a Solution,
-    variances: &'a Variances,
-    limit: Largest,
-}
-
-impl Told<'_> {
-    fn residual(&self, variable: u32, value: f64, sigma: f64) -> Residual {
-        let place = variable as usize;
-        Residual { deviation: value - self.solution.x[place], sigma, variance: self.variances.total[place] }
-    }
-
-    /// Value and standard uncertainty of a variable, if it can be known.
-    fn known(&self, variable: u32) -> Option<(f64, f64)> {
-        let place = variable as usize;
-        let (value, sigma) = (self.solution.x[place], self.variances.sigma(variable));
-        let span = match self.roles[place] {
-            VariableRole::MassFlow if self.limit.mass_flow > 0.0 => self.limit.mass_flow,
-            VariableRole::Power if self.limit.power > 0.0 => self.limit.power,
-            role => role.span(value),
-        };
-        let determined = !self.solution.linearisation.touched()[place];
-        (determined && sigma <= span && value.is_finite()).then_some((value, sigma))
-    }
-
-    fn repeat_sigma(&self, variable: u32) -> Option<f64> {
-        self.variances.repeat.as_ref().map(|repeat| repeat[variable as usize].sqrt())
-    }
-
-    /// A live tag or given; `reads` is the variable it speaks of and variable minus reading.
-    fn tag(
-        &self,
-        reads: Option<(u32, f64)>,
-        observed: Observed,
-        samples: u32,
-        shared: f64,
-        residual: &Residual,
-        judged: &Judged,
-    ) -> TagBalance {
-        let sigma = observed.sigma.hypot(shared);
-        let variance = reads.map_or(residual.variance, |(base, _)| self.variances.total[base as usize]);
-        let reconciled = reads.map_or(observed.value, |(base, shift)| self.solution.x[base as usize] - shift);
-        let redundancy =
-            if shared > 0.0 { (1.0 - variance / (sigma * sigma)).clamp(0.0, 1.0) } else { judged.redundancy };
-        TagBalance {
-            measured: Some(observed.value),
-            sigma: Some(sigma),
-            samples,
-            reconciled: Some(reconciled),
-            reconciled_sigma: Some(
-                reads.map_or(residual.variance.sqrt(), |(base, _)| self.variances.sigma(base)),
-            ),
-            correction: Some(reconciled - observed.value),
-            redundancy: Some(redundancy),
-            statistic: judged.statistic,
-            minimum_detectable_bias: judged.minimum_detectable_bias,
-            class: judged.class,
-            verdict: judged.verdict,
-        }
-    }
-
-    /// A tag that takes no part; what it would have read is told where it is known.
-    fn excluded(&self, reads: Option<(u32, f64)>, samples: u32) -> TagBalance {
-        let known = reads.filter(|(base, _)| !self.solution.linearisation.touched()[*base as usize]);
-        TagBalance {
-            samples,
-            reconciled: known.map(|(base, shift)| self.solution.x[base as usize] - shift),
-            reconciled_sigma: known.map(|(base, _)| self.variances.sigma(base)),
-            ..NOTHING
-        }
-    }
-}
-
-/// A tag that enters no balance and states no uncertainty: its reading is kept, and nothing is said of it.
-fn kept(observed: Observed, samples: u32) -> TagBalance {
-    TagBalance { measured: Some(observed.value), samples, verdict: Verdict::Unchecked, ..NOTHING }
-}
-
-/// A tag of which nothing is known.
-const NOTHING: TagBalance = TagBalance {
-    measured: None,
-    sigma: None,
-    samples: 0,
-    reconciled: None,
-    reconciled_sigma: None,
-    correction: None,
-    redundancy: None,
-    statistic: None,
-    minimum_detectable_bias: None,
-    class: TagClass::Nonredundant,
-    verdict: Verdict::Excluded,
-};

@@ -394,10 +394,9 @@ impl CompiledPlant {
         named: &[Named],
         balance: &Balance,
     ) -> GlobalTest {
-        let source =
-            |named: &Named| self.candidates[live.candidate[named.hypothesis as usize] as usize].source;
-        let taken: Vec<usize> =
-            named.iter().filter_map(|named| self.place(observations, source(named))).collect();
+        let source = |at: u16| self.candidates[live.candidate[at as usize] as usize].source;
+        let groups = named.iter().flat_map(Named::group);
+        let taken: Vec<usize> = groups.filter_map(|at| self.place(observations, source(at))).collect();
         let rest = observations.situation.observations.iter().enumerate();
         let rest = rest.filter(|(place, _)| !taken.contains(place));
         let statistic = rest.map(|(_, o)| ((o.value - after.x[o.variable as usize]) / o.sigma).powi(2)).sum();

@@ -122,7 +122,8 @@ impl Posterior {
             Set { members, probability }
         };
         let sets = kept.into_iter().map(set).collect();
-        let inclusion = (0..count).map(|at| pairs[at * count + at]).collect();
+        // Shares of one total, whose rounding may exceed it.
+        let inclusion = (0..count).map(|at| pairs[at * count + at].min(1.0)).collect();
         Self { sets, inclusion, pairs, complete }
     }
 

@@ -277,13 +277,22 @@ fn observed<T>(
 ) -> Result<(u32, f64), Fault> {
     let data = naming.system().variables[variable as usize].clone();
     if unit.dimension() != data.dimension {
-        let message = format!(
-            "`{}` is {}, but `{}` is {}",
-            data.name,
-            data.dimension.name(),
-            unit.name(),
-            unit.dimension().name()
-        );
+        let message = if unit.name() == "1" {
+            format!(
+                "`{}` is {}, but this number has no unit: write it in quotes with one, such as \"1 {}\"",
+                data.name,
+                data.dimension.name(),
+                Unit::default_for(data.dimension).name()
+            )
+        } else {
+            format!(
+                "`{}` is {}, but `{}` is {}",
+                data.name,
+                data.dimension.name(),
+                unit.name(),
+                unit.dimension().name()
+            )
+        };
         return Err(Fault { span: at.span, message });
     }
     if unit.reference() == Reference::Absolute {

@@ -291,7 +291,7 @@ impl CompiledPlant {
         balance.findings = named.iter().map(|named| self.finding(live, posterior, named)).collect();
         self.mark(balance);
         let lessened = self.lessened(observations, live, &of, &sizes);
-        let Ok(mut after) = self.solve(&lessened, anchor) else {
+        let Some(mut after) = self.solve_from(&lessened, anchor, before) else {
             balance.warnings.push(
                 "the balance that accounts for the findings wasn't found: values are those without them"
                     .into(),
@@ -322,6 +322,22 @@ impl CompiledPlant {
         );
         balance.global_test_after = Some(self.test_after(observations, &after, live, named, balance));
         Ok(())
+    }
+
+    /// Solves from the anchor, and where that finds nothing from the solution with the errors in it.
+    fn solve_from(
+        &self,
+        situation: &Situation,
+        anchor: Option<&Anchor>,
+        before: &Solution,
+    ) -> Option<Solution> {
+        let from_anchor = |anchor: &Anchor| estimate::solve(&self.problem, situation, anchor).ok();
+        let from_before = |anchor: &Anchor| {
+            let (x, forms) = (before.x.clone(), before.forms.clone());
+            estimate::solve_from(&self.problem, situation, anchor, x, forms).ok()
+        };
+        let found = anchor.and_then(|anchor| from_anchor(anchor).or_else(|| from_before(anchor)));
+        found.or_else(|| self.solve(situation, None).ok())
     }
 
     fn finding(&self, live: &Live, posterior: &Posterior, named: &Named) -> Finding {

@@ -22,7 +22,7 @@ const MOST_VISITED: usize = 200;
 /// A set has at most so many members.
 const LARGEST_SET: usize = 12;
 /// Sets with less than this share of the best one's weight add nothing to sizes and uncertainties.
-const NEGLIGIBLE: f64 = 1e-3;
+const NEGLIGIBLE: f64 = 1e-2;
 
 /// A set of hypotheses.
 #[derive(Clone, Debug, PartialEq)]
@@ -145,8 +145,9 @@ impl Posterior {
         let (mut total, mut best) = (0.0, 0.0_f64);
         for set in self.sets.iter().filter(|set| counts(set)) {
             best = best.max(set.probability);
+            // The most probable sets come first.
             if set.probability < NEGLIGIBLE * best {
-                continue;
+                break;
             }
             total += set.probability;
             let own = evidence.sizes(&set.members);

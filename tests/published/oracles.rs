@@ -79,6 +79,44 @@ fn a_loop_of_unmetered_pipes_is_unknown_and_disturbs_nothing() {
     near("statistic", told.statistic(), 4.0 / 2.25, 1e-12);
 }
 
+/// No flow is read, but whatever flows through a pipe without loss leaves with the enthalpy it came with: at equal pressures
+/// both thermometers read one temperature, the mean of 60.2 and 59.7 degC, and differ by 0.5 K where 0.5 sqrt(2) is one
+/// standard deviation.
+#[test]
+fn a_pipe_without_a_flow_meter_ties_its_thermometers() {
+    let plant = plant(
+        r#"
+[streams.a]
+fluid = "water"
+to = "pipe.inlet"
+[streams.b]
+fluid = "water"
+from = "pipe.outlet"
+[equipment.pipe]
+kind = "pipe"
+[given]
+"a.pressure" = "6 bar"
+"b.pressure" = "6 bar"
+[tags.TA]
+reads = "a.temperature"
+unit = "degC"
+sigma = "0.5 K"
+[tags.TB]
+reads = "b.temperature"
+unit = "degC"
+sigma = "0.5 K"
+"#,
+    );
+    let told = balance(&plant, &readings(&plant, &[("TA", 60.2), ("TB", 59.7)]));
+    assert_eq!(told.quantity("a.mass_flow").class, QuantityClass::Unobservable);
+    assert_eq!(told.freedom(), 1);
+    near("statistic", told.statistic(), 0.5, 1e-9);
+    for tag in ["TA", "TB"] {
+        near(tag, told.tag(tag).reconciled.unwrap(), 59.95 + 273.15, 1e-9);
+        near(tag, told.tag(tag).reconciled_sigma.unwrap(), 0.5 / 2.0_f64.sqrt(), 1e-9);
+    }
+}
+
 /// A mixer whose second inlet is shut: exactly no flow, so that its enthalpy drops out.
 #[test]
 fn the_enthalpy_of_a_branch_without_flow_drops_out() {

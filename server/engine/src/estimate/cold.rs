@@ -15,6 +15,7 @@ use super::failure::Failure;
 use super::problem::{Problem, Situation};
 use super::scaling::{Anchor, Scaling};
 use super::solve::{Solution, solve_from};
+use super::start::open_flows;
 use super::step::Filter;
 
 /// Where proximal steps end.
@@ -44,11 +45,41 @@ pub fn solve_cold(
     forms: Vec<Form>,
 ) -> Result<(Solution, Anchor), Failure> {
     let (weight, _) = situation.weights();
-    let rough = Anchor::new(problem, guess, forms, weight.clone());
+    let rough = Anchor::new(problem, guess, forms, weight);
+    solve_near(problem, situation, &rough).or_else(|failure| {
+        // A flow that no reading and no mass balance tells of can close an energy balance by ceasing. Approached with it
+        // running, the equations leave it open unless something else determines it.
+        let mut running = situation.clone();
+        let open = open_flows(problem, situation);
+        for flow in &open {
+            running.exact[*flow as usize] = Some(rough.x[*flow as usize]);
+        }
+        if open.is_empty() {
+            return Err(failure);
+        }
+        let Ok((_, anchor)) = solve_near(problem, &running, &rough) else { return Err(failure) };
+        solve_at(problem, situation, &anchor).map_err(|_| failure)
+    })
+}
+
+/// Solves from where proximal steps lead.
+fn solve_near(
+    problem: &Problem,
+    situation: &Situation,
+    rough: &Anchor,
+) -> Result<(Solution, Anchor), Failure> {
     let near = proximal(problem, situation, &rough.scale, rough.x.clone(), &rough.forms, FAINT)?;
-    let anchor = Anchor::new(problem, near.x, rough.forms, weight.clone());
-    let solution = solve_from(problem, situation, &anchor, anchor.x.clone(), anchor.forms.clone())?;
-    let anchor = Anchor::new(problem, solution.x.clone(), solution.forms.clone(), weight);
+    solve_at(problem, situation, &Anchor::new(problem, near.x, rough.forms.clone(), rough.weight.clone()))
+}
+
+/// Solves from an anchor, and answers the one that the solution makes.
+fn solve_at(
+    problem: &Problem,
+    situation: &Situation,
+    anchor: &Anchor,
+) -> Result<(Solution, Anchor), Failure> {
+    let solution = solve_from(problem, situation, anchor, anchor.x.clone(), anchor.forms.clone())?;
+    let anchor = Anchor::new(problem, solution.x.clone(), solution.forms.clone(), anchor.weight.clone());
     Ok((solution, anchor))
 }
 

@@ -114,43 +114,81 @@ const UNREAD_SHARE: f64 = 0.1;
 /// Weight of that guess against a reading's (which is one over sigma squared, scaled).
 const UNREAD_WEIGHT: f64 = 1e-2;
 
+/// All mass flows, ascending.
+fn mass_flows(problem: &Problem) -> Vec<u32> {
+    let is_flow = |id: &u32| problem.roles[*id as usize] == VariableRole::MassFlow;
+    (0..problem.variables.len() as u32).filter(is_flow).collect()
+}
+
+/// The rows over mass flows alone, as sparse rows over their places among the flows; constants in units of `scale`.
+struct MassBalances {
+    row_start: Vec<u32>,
+    columns: Vec<u32>,
+    values: Vec<f64>,
+    constants: Vec<f64>,
+}
+
+impl MassBalances {
+    fn of(problem: &Problem, flows: &[u32], scale: f64) -> Self {
+        let is_flow = |id: u32| flows.binary_search(&id).is_ok();
+        let (mut row_start, mut columns, mut values, mut constants) =
+            (vec![0_u32], Vec::new(), Vec::new(), Vec::new());
+        for row in problem
+            .rows
+            .iter()
+            .filter(|row| row.role() == RowRole::Law && row.variables().iter().all(|v| is_flow(*v)))
+        {
+            let mut gradient = vec![0.0; row.variables().len()];
+            let zeros = vec![0.0; row.variables().len()];
+            let Ok(constant) = row.linearise(&zeros, Held(&[]), &mut gradient) else { continue };
+            let mut entries: Vec<(u32, f64)> = row
+                .variables()
+                .iter()
+                .zip(&gradient)
+                .filter_map(|(variable, slope)| Some((flows.binary_search(variable).ok()? as u32, *slope)))
+                .collect();
+            entries.sort_by_key(|(column, _)| *column);
+            entries.dedup_by(|a, b| {
+                let same = a.0 == b.0;
+                if same {
+                    b.1 += a.1;
+                }
+                same
+            });
+            columns.extend(entries.iter().map(|(column, _)| *column));
+            values.extend(entries.iter().map(|(_, slope)| *slope));
+            row_start.push(columns.len() as u32);
+            constants.push(constant / scale);
+        }
+        Self { row_start, columns, values, constants }
+    }
+}
+
+/// Flows that readings and mass balances leave open, one for each direction in which they do.
+pub(super) fn open_flows(problem: &Problem, situation: &Situation) -> Vec<u32> {
+    let flows = mass_flows(problem);
+    let (weight, _) = situation.weights();
+    let mask = |id: &u32| match (situation.exact[*id as usize], weight[*id as usize] > 0.0) {
+        (Some(_), _) => Column::Fixed,
+        (None, true) => Column::Weighted(1.0),
+        (None, false) => Column::Free,
+    };
+    let masks: Vec<Column> = flows.iter().map(mask).collect();
+    let rows = MassBalances::of(problem, &flows, 1.0);
+    let analysis = Pattern::new(flows.len(), rows.row_start, rows.columns)
+        .ok()
+        .and_then(|pattern| Analysis::new(&pattern, &rows.values, &masks).ok());
+    analysis.map_or_else(Vec::new, |analysis| analysis.held().iter().map(|at| flows[*at as usize]).collect())
+}
+
 /// Flows by weighted least squares on the mass balances, unread ones held weakly to a guess.
 fn flows(problem: &Problem, situation: &Situation, x: &mut [f64]) {
-    let is_flow = |id: u32| problem.variables[id as usize].role == VariableRole::MassFlow;
-    let flows: Vec<u32> = (0..problem.variables.len() as u32).filter(|id| is_flow(*id)).collect();
+    let flows = mass_flows(problem);
     let (weight, mean) = situation.weights();
     let read = flows.iter().filter(|id| weight[**id as usize] > 0.0).map(|id| mean[*id as usize].abs());
     let largest = read.fold(0.0, f64::max);
     let scale = if largest > 0.0 { largest } else { 1.0 };
-    let (mut row_start, mut columns, mut values, mut constants) =
-        (vec![0_u32], Vec::new(), Vec::new(), Vec::new());
-    for row in problem
-        .rows
-        .iter()
-        .filter(|row| row.role() == RowRole::Law && row.variables().iter().all(|v| is_flow(*v)))
-    {
-        let mut gradient = vec![0.0; row.variables().len()];
-        let zeros = vec![0.0; row.variables().len()];
-        let Ok(constant) = row.linearise(&zeros, Held(&[]), &mut gradient) else { continue };
-        let mut entries: Vec<(u32, f64)> = row
-            .variables()
-            .iter()
-            .zip(&gradient)
-            .filter_map(|(variable, slope)| Some((flows.binary_search(variable).ok()? as u32, *slope)))
-            .collect();
-        entries.sort_by_key(|(column, _)| *column);
-        entries.dedup_by(|a, b| {
-            let same = a.0 == b.0;
-            if same {
-                b.1 += a.1;
-            }
-            same
-        });
-        columns.extend(entries.iter().map(|(column, _)| *column));
-        values.extend(entries.iter().map(|(_, slope)| *slope));
-        row_start.push(columns.len() as u32);
-        constants.push(constant / scale);
-    }
+    let MassBalances { row_start, columns, values, constants } = MassBalances::of(problem, &flows, scale);
     let guess = |id: u32| match situation.exact[id as usize] {
         Some(exact) => exact / scale,
         None if weight[id as usize] > 0.0 => mean[id as usize] / scale,

@@ -11,7 +11,7 @@ use crate::balance::{
 use crate::compile::Instrument;
 use crate::estimate::{self, Anchor, Direction, Response, Situation, Solution};
 use crate::kkt::FactorError;
-use crate::search::{Candidate, Chance, Evidence, Named, Posterior, Set, Sizes, Source, name};
+use crate::search::{Candidate, Chance, Evidence, Named, Posterior, Set, Sizes, Source, bound, name};
 use crate::verdict;
 
 /// What the search of a plant keeps from one balance to the next, for each anchor and set of live tags.
@@ -102,9 +102,7 @@ impl CompiledPlant {
         }
         let limit = match &expected {
             Some(expected) => expected.chance.limit(false_alarm_rate),
-            None => {
-                Chance::simulate(&live.evidence).limit(self.share_of(live.candidate.len(), false_alarm_rate))
-            }
+            None => bound(&live.evidence, self.share_of(live.candidate.len(), false_alarm_rate)),
         };
         if live.evidence.strongest(&live.evidence.score) <= limit {
             return Ok(balance);

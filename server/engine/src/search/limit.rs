@@ -4,6 +4,8 @@
 //! strongest hypothesis shows how strong chance makes it; its quantile holds the share of error-free balances in which
 //! anything is found, however the hypotheses are correlated.
 
+use statrs::function::erf::erfc;
+
 use super::evidence::Evidence;
 
 /// Draws of a simulation: the share beyond the 95 % point then has a standard error of 0.15 points.
@@ -45,6 +47,28 @@ impl Chance {
         let at = (0..self.strongest.len()).find(below);
         at.filter(|_| share > 0.0).map_or(f64::NEG_INFINITY, |at| self.strongest[at])
     }
+}
+
+/// A strength that is exceeded with at most this probability, without a simulation: each hypothesis is held to a share of it
+/// as if all were independent, which is conservative where they are correlated (Bonferroni's inequality).
+///
+/// Alone, a hypothesis passes the strength `L` where its squared score over its information, chi-square with one degree of
+/// freedom without errors, exceeds `(2 (L - log odds) + log(1 + M)) (1 + M) / M`.
+pub(crate) fn bound(evidence: &Evidence, rate: f64) -> f64 {
+    let beyond = |limit: f64| -> f64 {
+        let one = |at: usize| {
+            let own = evidence.own(at);
+            let square = (2.0 * (limit - evidence.log_odds[at]) + own.ln_1p()) * (1.0 + own) / own;
+            if square > 0.0 { erfc((0.5 * square).sqrt()) } else { 1.0 }
+        };
+        (0..evidence.len()).map(one).sum()
+    };
+    let (mut low, mut high) = (-50.0, 200.0);
+    for _ in 0..60 {
+        let middle = 0.5 * (low + high);
+        if beyond(middle) > rate { low = middle } else { high = middle }
+    }
+    high
 }
 
 /// `L` with `L L' = M`, one row a hypothesis, by Cholesky's elimination with the largest pivot first: `M` has the rank

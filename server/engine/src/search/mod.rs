@@ -15,6 +15,6 @@ mod tests;
 
 pub(crate) use evidence::Evidence;
 pub(crate) use hypothesis::{Candidate, Parts, Source, candidates};
-pub(crate) use limit::Chance;
+pub(crate) use limit::{Chance, bound};
 pub(crate) use naming::{Named, name};
 pub(crate) use posterior::{Posterior, Set, Sizes};

@@ -2,7 +2,7 @@
 
 use nalgebra::{DMatrix, DVector};
 
-use super::{Chance, Evidence, Posterior};
+use super::{Chance, Evidence, Posterior, bound};
 
 /// Evidence of random directions: as many hypotheses as `count`, seen through fewer equations.
 fn evidence(seed: u64, count: usize, strength: f64) -> Evidence {
@@ -78,5 +78,8 @@ fn chance_exceeds_its_limit_as_often_as_it_should() {
     let limit = Chance::simulate(&one).limit(0.05);
     let normal = 1.959_964_f64;
     let expected = one.alone(0, normal * 2.0);
+    // Without a simulation the two count as independent: each is held to half the rate.
+    let half = one.alone(0, 2.241_403 * 2.0);
+    assert!((bound(&one, 0.05) - half).abs() < 1e-5, "{} instead of {half}", bound(&one, 0.05));
     assert!((limit - expected).abs() < 0.06, "{limit} instead of {expected}");
 }

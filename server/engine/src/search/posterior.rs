@@ -17,8 +17,10 @@ const WINDOW: f64 = 6.5;
 /// Sets this much less probable than the best are kept but not visited: what they lead to seldom comes back into the
 /// window.
 const VISITED: f64 = 5.0;
+/// Members are exchanged in sets that are no less probable than this against the best.
+const EXCHANGED: f64 = 2.0;
 /// So many sets are extended at most; a search that ends here says so.
-const MOST_VISITED: usize = 200;
+const MOST_VISITED: usize = 250;
 /// A set has at most so many members.
 const LARGEST_SET: usize = 12;
 /// Sets with less than this share of the best one's weight add nothing to sizes and uncertainties.
@@ -99,7 +101,9 @@ impl Posterior {
                 break;
             }
             visit.extend(&next.members);
-            visit.exchange(&next.members);
+            if next.weight >= visit.best - EXCHANGED {
+                visit.exchange(&next.members);
+            }
             visit.kept.push(next);
         }
         let complete = visit.waiting.peek().is_none_or(|next| next.weight < visit.best - VISITED);

@@ -26,6 +26,7 @@ use toml::de::DeTable;
 use self::names::Names;
 use self::reader::{Entry, Faults, Reader};
 use super::{Plant, Span, Tag};
+use crate::Position;
 use crate::fault::Fault;
 
 /// A plant file of a large site has a tenth of this.
@@ -57,11 +58,41 @@ pub fn parse_leniently(text: &str) -> (Option<Plant>, Vec<Fault>) {
         let plant = read(root, &faults).map(|plant| Plant { revision: revision(text), ..plant });
         return (plant, faults.into_sorted());
     }
-    for error in &errors {
+    let mut repeated = Vec::new();
+    for (number, error) in errors.iter().enumerate() {
         let span: Span = error.span().unwrap_or_default().into();
-        faults.add_with(span, || syntax_message(error.message(), text.get(span.start..span.end)));
+        let heading = if number < MOST_HEADINGS { heading(text, span.start) } else { None };
+        let is_heading = heading.is_some_and(|(at, line)| (at..=at + line.len()).contains(&span.start));
+        let is_duplicate = error.message() == "duplicate key";
+        if is_duplicate && is_heading {
+            repeated.extend(heading.map(|(at, _)| at));
+        } else if is_duplicate && heading.is_some_and(|(at, _)| repeated.contains(&at)) {
+            // The keys of a table that stands twice are no faults of their own.
+            continue;
+        }
+        let first = heading.filter(|_| is_heading).and_then(|(_, line)| text.find(line));
+        faults.add_with(span, || {
+            let told = syntax_message(error.message(), text.get(span.start..span.end));
+            match first.filter(|_| is_duplicate) {
+                Some(first) => format!("{told}, first on line {}", Position::of(text, first).line),
+                None => told,
+            }
+        });
     }
     (None, faults.into_sorted())
+}
+
+/// For so many errors the heading is looked up: a file of nothing but errors would take seconds.
+const MOST_HEADINGS: usize = 100;
+
+/// Start and text of the table heading that a place stands in or under.
+fn heading(text: &str, at: usize) -> Option<(usize, &str)> {
+    let end = text.get(at..)?.find('\n').map_or(text.len(), |end| at + end);
+    let before = text.get(..end)?;
+    let is_heading = |(_, line): &(usize, &str)| line.starts_with('[');
+    let starts = std::iter::once(0).chain(before.match_indices('\n').map(|(at, _)| at + 1));
+    let lines = starts.filter_map(|start| Some((start, before.get(start..)?.lines().next()?.trim_end())));
+    lines.filter(is_heading).last()
 }
 
 /// SHA-256 of the text in lower-case hexadecimal.

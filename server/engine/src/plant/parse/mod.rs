@@ -92,7 +92,7 @@ fn heading(text: &str, at: usize) -> Option<(usize, &str)> {
     let is_heading = |(_, line): &(usize, &str)| line.starts_with('[');
     let starts = std::iter::once(0).chain(before.match_indices('\n').map(|(at, _)| at + 1));
     let lines = starts.filter_map(|start| Some((start, before.get(start..)?.lines().next()?.trim_end())));
-    lines.filter(is_heading).last()
+    lines.rev().find(is_heading)
 }
 
 /// SHA-256 of the text in lower-case hexadecimal.

@@ -3,9 +3,9 @@
 //! Test statistics and estimates were computed independently of this project by two methods that agree, from the problems
 //! gathered in E. Cordeiro do Valle et al., Computers & Chemical Engineering 111 (2018) 134-148.
 
-use meterwright_engine::{Finding, FindingKind, Outcome, Verdict};
+use meterwright_engine::{CompiledPlant, Finding, FindingKind, Outcome, Reading, Verdict};
 
-use crate::support::{Case, Told, near};
+use crate::support::{Case, Told, compiled, near};
 
 /// Tonnes an hour in kg/s.
 const T_H: f64 = 1.0 / 3.6;
@@ -142,4 +142,126 @@ fn the_balance_after_a_finding_closes_and_tells_its_doubt() {
     // Without the wrong reading, nearly: the prior size of a bias leaves it a hundredth of its weight.
     let freed = case.balance_of(&case.without(1, &["FT-13"]));
     near("stream 13", flow(13), freed.quantity("s13.mass_flow").value.unwrap(), 0.05 * T_H * 2.78);
+}
+
+/// A cooler: hot water in and out, cold water in and out, every flow and temperature read, each flow twice.
+fn cooler(given: &str, more: &str) -> CompiledPlant {
+    let stream = |name: &str, ends: &str| format!("[streams.{name}]\nfluid = \"water\"\n{ends}\n");
+    let mut text = String::from("format = 1\n[plant]\nname = \"invented cooler\"\n");
+    for (name, ends) in [
+        ("hot_in", "to = \"cooler.hot_inlet\""),
+        ("hot_out", "from = \"cooler.hot_outlet\""),
+        ("cold_in", "to = \"cooler.cold_inlet\""),
+        ("cold_out", "from = \"cooler.cold_outlet\""),
+    ] {
+        text += &stream(name, ends);
+        for place in ["A", "B"] {
+            text += &format!(
+                "[tags.F{place}-{name}]\nreads = \"{name}.mass_flow\"\nunit = \"t/h\"\nsigma = \"0.5 %\"\n\
+                 [tags.T{place}-{name}]\nreads = \"{name}.temperature\"\nunit = \"degC\"\nsigma = \"0.1 K\"\n"
+            );
+        }
+    }
+    text += "[equipment.cooler]\nkind = \"heat_exchanger\"\n[given]\n";
+    for name in ["hot_in", "hot_out", "cold_in", "cold_out"] {
+        text += &format!("\"{name}.pressure\" = \"5 bar\"\n");
+    }
+    compiled(&(text + given + "\n" + more))
+}
+
+/// Readings of a cooler that loses nothing: 100 t/h of water from 80 to 50 degC warm 150 t/h from 20 degC. At 5 bar IAPWS-IF97
+/// gives the enthalpies 335.30, 209.70 and 84.34 kJ/kg, so that the cold water leaves with 168.07 kJ/kg at 40.05 degC;
+/// `heat_lost` (in kJ/kg of hot water) is what it receives less.
+fn cooler_readings(plant: &CompiledPlant, heat_lost: f64) -> Vec<Option<Reading>> {
+    // The specific heat of water near 40 degC and 5 bar is 4.178 kJ/(kg K).
+    let cold = 40.05 - heat_lost * 100.0 / 150.0 / 4.178;
+    let truth = [
+        ("hot_in", 100.0, 80.0),
+        ("hot_out", 100.0, 50.0),
+        ("cold_in", 150.0, 20.0),
+        ("cold_out", 150.0, cold),
+    ];
+    let value = |tag: &str| {
+        let (sort, name) = tag.split_once('-').unwrap();
+        let (_, flow, temperature) = truth.iter().find(|(stream, ..)| *stream == name).unwrap();
+        Some(Reading::single(if sort.starts_with('F') { *flow } else { *temperature }))
+    };
+    plant.tags().iter().map(|tag| value(&tag.name)).collect()
+}
+
+fn searched_of<'c>(plant: &'c CompiledPlant, readings: &[Option<Reading>]) -> Told<'c> {
+    let anchor = plant.anchor(readings);
+    let balance = plant.balance_and_search(readings, anchor.as_ref(), 0.05);
+    assert_eq!(balance.outcome, Outcome::Converged);
+    Told { compiled: plant, balance }
+}
+
+/// The findings' kind, place and size in the finding's own unit.
+fn told_findings(told: &Told<'_>) -> Vec<(FindingKind, String, f64)> {
+    let hypotheses: Vec<_> = told.compiled.hypotheses().collect();
+    let one = |finding: &Finding| {
+        let hypothesis = hypotheses[finding.hypothesis];
+        (hypothesis.kind, hypothesis.at.clone(), hypothesis.unit.difference_from_si(finding.estimate))
+    };
+    told.balance.findings.iter().map(one).collect()
+}
+
+#[test]
+fn heat_that_nothing_accounts_for_is_found_with_its_sign() {
+    let plant = cooler("", "");
+    assert!(searched_of(&plant, &cooler_readings(&plant, 0.0)).balance.findings.is_empty());
+    for lost in [10.0, -10.0] {
+        let told = searched_of(&plant, &cooler_readings(&plant, lost));
+        let found = told_findings(&told);
+        assert_eq!(
+            (found.len(), found[0].0, found[0].1.as_str()),
+            (1, FindingKind::Loss, "cooler"),
+            "{found:?}"
+        );
+        // 10 kJ/kg of 100 t/h; positive when it leaves.
+        near("heat lost, MW", found[0].2, lost * 100.0 / 3600.0, 0.03);
+    }
+}
+
+/// A heat loss that the plant file gives: 3 MW too much to be true.
+#[test]
+fn a_given_that_is_wrong_is_found_as_given_minus_truth() {
+    let soft = cooler(
+        "\"cooler.heat_loss\" = { value = \"0.3 MW\", sigma = \"0.01 MW\" }",
+        "[search]\nhypotheses = [\"bias\", \"given\"]",
+    );
+    let exact = cooler("\"cooler.heat_loss\" = \"0.3 MW\"", "[search]\nhypotheses = [\"bias\", \"given\"]");
+    for plant in [&soft, &exact] {
+        let told = searched_of(plant, &cooler_readings(plant, 0.0));
+        let found = told_findings(&told);
+        assert_eq!(
+            (found.len(), found[0].0, found[0].1.as_str()),
+            (1, FindingKind::Given, "cooler.heat_loss"),
+            "{found:?}"
+        );
+        near("given minus truth, MW", found[0].2, 0.3, 0.04);
+        let loss = told.quantity("cooler.heat_loss").value.unwrap();
+        near("heat loss after, MW", loss / 1e6, 0.0, 0.04);
+    }
+    assert_eq!(
+        searched_of(&soft, &cooler_readings(&soft, 0.0)).given("cooler.heat_loss").verdict,
+        Verdict::Suspect
+    );
+}
+
+/// Both flow meters of the hot inlet hang on one element that reads 4 % too much.
+#[test]
+fn an_error_that_meters_share_is_found_as_one() {
+    let plant = cooler("", "[shared.FE-1]\ntags = [\"FA-hot_in\", \"FB-hot_in\"]\nsigma = \"0.5 %\"");
+    let mut readings = cooler_readings(&plant, 0.0);
+    for (reading, tag) in readings.iter_mut().zip(plant.tags()) {
+        if tag.name.ends_with("-hot_in") && tag.name.starts_with('F') {
+            *reading = Some(Reading::single(104.0));
+        }
+    }
+    let told = searched_of(&plant, &readings);
+    let found = told_findings(&told);
+    assert_eq!((found.len(), found[0].0, found[0].1.as_str()), (1, FindingKind::Shared, "FE-1"), "{found:?}");
+    near("share of the reading, %", found[0].2, 4.0, 0.5);
+    near("hot water after, t/h", told.quantity("hot_in.mass_flow").value.unwrap() / T_H, 100.0, 0.5);
 }

@@ -14,6 +14,9 @@ use std::collections::HashMap;
 use std::hint::black_box;
 use std::time::Instant;
 
+use rand_distr::{Distribution, StandardNormal, Uniform};
+use rand_pcg::Pcg64Mcg;
+
 use meterwright_engine::plant::parse;
 use meterwright_engine::{Balance, CompiledPlant, Outcome, Reading};
 
@@ -22,25 +25,6 @@ const LOG: &str = include_str!("../plants/reheat_unit.csv");
 
 /// Balances for each number of errors.
 const DRAWS: usize = 1000;
-
-/// A seeded generator: uniform numbers of a linear congruence, normal ones by Box and Muller.
-struct Random(u64);
-
-impl Random {
-    fn uniform(&mut self) -> f64 {
-        self.0 = self.0.wrapping_mul(6_364_136_223_846_793_005).wrapping_add(1_442_695_040_888_963_407);
-        ((self.0 >> 33) as f64 + 1.0) / f64::from(1_u32 << 31)
-    }
-
-    fn below(&mut self, count: usize) -> usize {
-        self.uniform();
-        (self.0 >> 33) as usize % count
-    }
-
-    fn normal(&mut self) -> f64 {
-        (-2.0 * self.uniform().ln()).sqrt() * (std::f64::consts::TAU * self.uniform()).cos()
-    }
-}
 
 fn first_row(compiled: &CompiledPlant) -> Vec<Option<Reading>> {
     let mut lines = LOG.lines().map(|line| line.split(','));
@@ -55,13 +39,15 @@ fn readings(
     compiled: &CompiledPlant,
     truth: &Balance,
     wrong: usize,
-    random: &mut Random,
+    random: &mut Pcg64Mcg,
 ) -> Vec<Option<Reading>> {
-    let mut noise: Vec<f64> = truth.tags.iter().map(|_| random.normal()).collect();
+    let mut noise: Vec<f64> = truth.tags.iter().map(|_| StandardNormal.sample(&mut *random)).collect();
+    let place = Uniform::new(0, noise.len()).expect("there are tags");
+    let size = Uniform::new(5.0, 15.0).expect("a range");
     for _ in 0..wrong {
-        let at = random.below(noise.len());
-        let sign = if random.uniform() > 0.5 { 1.0 } else { -1.0 };
-        noise[at] += sign * (5.0 + 10.0 * random.uniform());
+        let at = place.sample(random);
+        let size: f64 = size.sample(random);
+        noise[at] += size.copysign(noise[at]);
     }
     let read =
         |((tag, label), noise): ((&meterwright_engine::TagBalance, &meterwright_engine::Label), &f64)| {
@@ -81,7 +67,7 @@ fn main() {
     println!("wrong tags   median ms   90 % ms   worst ms   findings");
     let truth = compiled.balance(&first, anchor.as_ref());
     for wrong in 0..=5 {
-        let mut random = Random(wrong as u64 + 1);
+        let mut random = Pcg64Mcg::new(wrong as u128 + 1);
         let (mut times, mut findings) = (Vec::new(), 0);
         for _ in 0..DRAWS {
             let readings = readings(&compiled, &truth, wrong, &mut random);

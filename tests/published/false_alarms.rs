@@ -1,26 +1,11 @@
 //! The share of error-free balances in which anything is found, on three plants, by simulation.
 
+use rand_distr::{Distribution, StandardNormal};
+use rand_pcg::Pcg64Mcg;
+
 use meterwright_engine::{Outcome, Reading};
 
 use crate::support::Case;
-
-/// The generator splitmix64 (Steele, Lea and Flood, OOPSLA 2014) with Box and Muller's normals.
-struct Random(u64);
-
-impl Random {
-    fn uniform(&mut self) -> f64 {
-        self.0 = self.0.wrapping_add(0x9e37_79b9_7f4a_7c15);
-        let mut z = self.0;
-        z = (z ^ (z >> 30)).wrapping_mul(0xbf58_476d_1ce4_e5b9);
-        z = (z ^ (z >> 27)).wrapping_mul(0x94d0_49bb_1331_11eb);
-        z ^= z >> 31;
-        ((z >> 11) + 1) as f64 / (1_u64 << 53) as f64
-    }
-
-    fn normal(&mut self) -> f64 {
-        (-2.0 * self.uniform().ln()).sqrt() * (std::f64::consts::TAU * self.uniform()).cos()
-    }
-}
 
 /// Balances a plant's first row, takes that state for the truth, draws every reading (and what is given with a standard
 /// deviation is true) and counts the draws in which anything is found.
@@ -28,19 +13,17 @@ fn alarms(stem: &str, draws: u32, rate: f64) -> u32 {
     let case = Case::load(stem);
     let anchor = case.compiled.anchor(&case.rows[0]);
     let truth = case.compiled.balance(&case.rows[0], anchor.as_ref());
-    let mut random = Random(7);
+    let mut random = Pcg64Mcg::new(7);
     let mut alarms = 0;
     for _ in 0..draws {
-        let draw = |(tag, (label, read)): (
-            &meterwright_engine::TagBalance,
-            (&meterwright_engine::Label, &Option<Reading>),
-        )| {
-            read.as_ref()?;
-            let (value, sigma) = (tag.reconciled?, tag.sigma?);
-            Some(Reading::single(label.unit.from_si(value + sigma * random.normal())))
-        };
-        let readings: Vec<Option<Reading>> =
-            truth.tags.iter().zip(case.compiled.tags().iter().zip(&case.rows[0])).map(draw).collect();
+        let mut readings = vec![None; truth.tags.len()];
+        for (at, tag) in truth.tags.iter().enumerate() {
+            let noise: f64 = StandardNormal.sample(&mut random);
+            if let (Some(_), Some(value), Some(sigma)) = (case.rows[0][at], tag.reconciled, tag.sigma) {
+                let unit = case.compiled.tags()[at].unit;
+                readings[at] = Some(Reading::single(unit.from_si(value + sigma * noise)));
+            }
+        }
         let balance = case.compiled.balance_and_search(&readings, anchor.as_ref(), rate);
         assert_eq!(balance.outcome, Outcome::Converged);
         alarms += u32::from(!balance.findings.is_empty());

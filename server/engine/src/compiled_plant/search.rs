@@ -35,6 +35,8 @@ struct Expected {
 const KEPT: usize = 64;
 /// Below this share of a prior variance's worth of information nothing could be seen of a hypothesis.
 const INVISIBLE: f64 = 0.1;
+/// A rate below this is too rare for the simulation to tell.
+const RAREST: f64 = 1e-3;
 /// So many hypotheses are weighed against one another at most.
 const MOST: usize = 500;
 
@@ -101,7 +103,8 @@ impl CompiledPlant {
             return Ok(balance);
         }
         let limit = match &expected {
-            Some(expected) => expected.chance.limit(false_alarm_rate),
+            Some(expected) if false_alarm_rate >= RAREST => expected.chance.limit(false_alarm_rate),
+            Some(_) => bound(&live.evidence, false_alarm_rate),
             None => bound(&live.evidence, self.share_of(live.candidate.len(), false_alarm_rate)),
         };
         if live.evidence.strongest(&live.evidence.score) <= limit {
@@ -285,7 +288,9 @@ impl CompiledPlant {
         let of = groups.concat();
         let counts =
             |set: &Set| groups.iter().all(|group| group.iter().any(|member| set.members.contains(member)));
-        let sizes = posterior.sizes(&live.evidence, &of, counts);
+        // Findings that hold only in turn, never together, are averaged over all sets.
+        let together = posterior.sets.iter().any(counts);
+        let sizes = posterior.sizes(&live.evidence, &of, |set| !together || counts(set));
         balance.findings = named.iter().map(|named| self.finding(live, posterior, named)).collect();
         self.mark(balance);
         let lessened = self.lessened(observations, live, &of, &sizes);

@@ -249,3 +249,27 @@ fn scores_and_information_give_the_published_likelihood_ratios() {
         }
     }
 }
+
+/// What a solve evaluates from plain arrays is what each row's own equation says.
+#[test]
+fn rows_have_the_same_value_and_derivatives_by_their_recipes() {
+    for plant in [UNIT, NETWORK] {
+        let (compiled, _, anchor) = case(plant);
+        let problem = &compiled.problem;
+        for moved in [0.0, 0.003] {
+            let x: Vec<f64> =
+                anchor.x.iter().enumerate().map(|(j, x)| x * (1.0 + moved * (j as f64).sin())).collect();
+            let [own, recipe] = probe::evaluated(problem, &x, &anchor.forms);
+            for row in 0..problem.rows() {
+                let places = problem.pattern.range(row);
+                let terms = own.1[places.clone()].iter().zip(problem.pattern.row(row));
+                let largest = terms.map(|(slope, j)| (slope * x[*j as usize]).abs()).fold(1e-300, f64::max);
+                let name = problem.rows[row].name();
+                assert!((own.0[row] - recipe.0[row]).abs() <= 1e-13 * largest, "{name}: value");
+                for (a, b) in own.1[places.clone()].iter().zip(&recipe.1[places]) {
+                    assert!((a - b).abs() <= 1e-13 * a.abs(), "{name}: derivative {a} by its equation, {b}");
+                }
+            }
+        }
+    }
+}

@@ -24,6 +24,7 @@ mod pump;
 mod splitter;
 mod turbine;
 mod valve;
+mod variable;
 
 mod exchanger;
 mod expansion;
@@ -42,7 +43,8 @@ mod tests;
 pub use guess::Guess;
 pub(crate) use guess::{guess_phase, region_of};
 pub use machine::{Connection, Machine};
-pub use system::{Knowledge, StreamData, System, VariableData, VariableRole};
+pub use system::System;
+pub use variable::{Knowledge, StreamData, VariableData, VariableRole};
 
 use crate::plant::PhaseHint;
 use crate::quantity::Dimension;

@@ -111,19 +111,19 @@ pub(super) fn proximal(
     }
     let mut here = Evaluation::default();
     here.at(problem, &x, forms).map_err(|error| Failure::no_value(problem, &error))?;
+    let mut iterate = Iterate { problem, situation, forms, x, here, filter: Filter::default() };
     let mut strength = 1e-2;
-    let mut filter = Filter::default();
     let mut values = Vec::new();
     let mut factor = None;
-    let mut scaling = Scaling::at(problem, scale.to_vec(), &here);
+    let mut scaling = Scaling::at(problem, scale.to_vec(), &iterate.here);
     for step_number in 0..MOST_STEPS {
         if step_number % 8 == 0 {
             // Rows whose derivatives were small at a poor point are scaled anew as the point improves.
-            scaling = Scaling::at(problem, scale.to_vec(), &here);
-            filter = Filter::default();
+            scaling = Scaling::at(problem, scale.to_vec(), &iterate.here);
+            iterate.filter = Filter::default();
             factor = None;
         }
-        scaling.jacobian(&here, &mut values);
+        scaling.jacobian(&iterate.here, &mut values);
         let weights: Vec<f64> = weight.iter().zip(scale).map(|(w, s)| w * s * s).collect();
         let system = System { problem, situation, weights: &weights, values: &values, strength, softening };
         let Ok(mut ready) = system.factor(factor.take()) else {
@@ -136,10 +136,10 @@ pub(super) fn proximal(
         let mut right = Vectors::zeros(ready.analysis());
         let mut step = Vectors::zeros(ready.analysis());
         for (j, slot) in right.columns.iter_mut().enumerate() {
-            *slot = weight[j] * (mean[j] - x[j]) * scale[j];
+            *slot = weight[j] * (mean[j] - iterate.x[j]) * scale[j];
         }
         for (i, slot) in right.rows.iter_mut().enumerate() {
-            *slot = -here.residual[i] * scaling.row[i];
+            *slot = -iterate.here.residual[i] * scaling.row[i];
         }
         let solved = ready.solve(&right, &mut step);
         factor = Some(ready);
@@ -148,8 +148,7 @@ pub(super) fn proximal(
             factor = None;
             continue;
         }
-        let moved =
-            take_step(problem, situation, &scaling, forms, &mut x, &mut here, &step.columns, &mut filter);
+        let moved = iterate.advance(&scaling, &step.columns);
         let size = step.columns.iter().map(|value| value.abs()).fold(0.0, f64::max);
         if size < SMALL || strength > STRONGEST {
             break;
@@ -159,8 +158,8 @@ pub(super) fn proximal(
             strength = (strength * 0.2).max(1e-9);
         }
     }
-    let slack = here.residual.iter().zip(&scaling.row).map(|(c, s)| c * s).collect();
-    Ok(Softened { x, slack })
+    let slack = iterate.here.residual.iter().zip(&scaling.row).map(|(c, s)| c * s).collect();
+    Ok(Softened { x: iterate.x, slack })
 }
 
 /// One proximal system.
@@ -198,38 +197,43 @@ impl System<'_> {
     }
 }
 
-/// Moves along a step as far as the filter lets it; says whether it moved.
-#[allow(clippy::too_many_arguments, reason = "the state of the iteration, used once")]
-fn take_step(
-    problem: &Problem,
-    situation: &Situation,
-    scaling: &Scaling,
-    forms: &[Form],
-    x: &mut Vec<f64>,
-    here: &mut Evaluation,
-    step: &[f64],
-    filter: &mut Filter,
-) -> bool {
-    let infeasibility = |here: &Evaluation| -> f64 {
-        here.residual.iter().zip(&scaling.row).map(|(c, s)| (c * s).abs()).sum()
-    };
-    let now = (infeasibility(here), situation.objective(x));
-    let from = x.clone();
-    let (mut share, _) = longest(&problem.bounded, &from, step, scaling);
-    for _ in 0..8 {
-        for (j, value) in x.iter_mut().enumerate() {
-            *value = from[j] + share * step[j] * scaling.column[j];
+/// Where proximal steps stand.
+struct Iterate<'a> {
+    problem: &'a Problem,
+    situation: &'a Situation,
+    forms: &'a [Form],
+    x: Vec<f64>,
+    here: Evaluation,
+    filter: Filter,
+}
+
+impl Iterate<'_> {
+    /// Moves along a step as far as the filter lets it; says whether it moved.
+    fn advance(&mut self, scaling: &Scaling, step: &[f64]) -> bool {
+        let now = self.measures(scaling);
+        let from = self.x.clone();
+        let (mut share, _) = longest(&self.problem.bounded, &from, step, scaling);
+        for _ in 0..8 {
+            for (j, value) in self.x.iter_mut().enumerate() {
+                *value = from[j] + share * step[j] * scaling.column[j];
+            }
+            if self.here.at(self.problem, &self.x, self.forms).is_ok()
+                && self.filter.accepts(self.measures(scaling), now)
+            {
+                self.filter.add(now);
+                return true;
+            }
+            share *= 0.5;
         }
-        if here.at(problem, x, forms).is_ok()
-            && filter.accepts((infeasibility(here), situation.objective(x)), now)
-        {
-            filter.add(now);
-            return true;
-        }
-        share *= 0.5;
+        self.x = from;
+        // This point was accepted before, so that it has a value; the evaluation must be its own again.
+        let _ = self.here.at(self.problem, &self.x, self.forms);
+        false
     }
-    *x = from;
-    // This point was accepted before, so that it has a value; the evaluation must be its own again.
-    let _ = here.at(problem, x, forms);
-    false
+
+    /// Infeasibility and objective.
+    fn measures(&self, scaling: &Scaling) -> (f64, f64) {
+        let residuals = self.here.residual.iter().zip(&scaling.row);
+        (residuals.map(|(c, s)| (c * s).abs()).sum(), self.situation.objective(&self.x))
+    }
 }

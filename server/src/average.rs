@@ -53,7 +53,7 @@ pub(crate) fn mean(samples: &[WeightedSample]) -> Option<Reading> {
         let spread = weighted_sum(samples, |sample| deviation(sample).powi(2));
         (spread / (effective_number(samples, deviation).max(2.0) - 1.0)).sqrt()
     });
-    Some(Reading { mean, standard_error, samples: samples.len() as u32 })
+    Some(Reading { mean, standard_error, samples: samples.len() as u32, sigma: None })
 }
 
 /// Slope of the value over time with its standard error; none with fewer than three samples at different times.

@@ -349,7 +349,7 @@ fn repeat_sigma_is_what_the_gain_makes_of_repeatability() {
     let tags = tag("FA", "a", 0.5, 0.1) + &tag("FB", "b", 0.4, 0.2) + &tag("FC", "c", 0.3, 0.05);
     let plant = plant(&format!("{text}{tags}"));
     let mut values = readings(&plant, &[("FA", 100.0), ("FB", 62.0), ("FC", 36.5)]);
-    values[1] = Some(Reading { mean: 62.0, standard_error: Some(0.15), samples: 60 });
+    values[1] = Some(Reading { mean: 62.0, standard_error: Some(0.15), samples: 60, sigma: None });
     let told = balance(&plant, &values);
     let v = DMatrix::from_diagonal(&DVector::from_vec(vec![0.25, 0.16 + 0.15 * 0.15, 0.09]));
     let a = DMatrix::from_row_slice(1, 3, &[1.0, -1.0, -1.0]);

@@ -12,12 +12,14 @@ pub struct Reading {
     pub standard_error: Option<f64>,
     /// Number of samples behind the mean.
     pub samples: u32,
+    /// Standard uncertainty of a single reading, in the tag's unit, where another than the plant file states is wanted.
+    pub sigma: Option<f64>,
 }
 
 impl Reading {
     /// A single sample.
     pub fn single(value: f64) -> Self {
-        Self { mean: value, standard_error: None, samples: 1 }
+        Self { mean: value, standard_error: None, samples: 1, sigma: None }
     }
 }
 
@@ -136,6 +138,20 @@ pub struct Finding {
     pub alternatives: Vec<Alternative>,
 }
 
+/// What one balance says of a hypothesis before any is believed, in the SI of the hypothesis's unit.
+///
+/// Half the least sum of squares changes by `-score b + information b^2 / 2` where an error of size `b` is accounted for:
+/// the size that explains most is `score / information`, its variance `1 / information`. Over balances both add up.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Evidence {
+    /// Which of the plant's hypotheses.
+    pub hypothesis: usize,
+    /// Slope of half the sum of squares along the error.
+    pub score: f64,
+    /// Its curvature.
+    pub information: f64,
+}
+
 /// A hypothesis that would explain the readings about as well as the one a finding names.
 #[derive(Clone, Copy, Debug, PartialEq)]
 pub struct Alternative {
@@ -199,6 +215,8 @@ pub struct Balance {
     pub global_test_after: Option<GlobalTest>,
     /// Suspected errors, the most probable first; empty where nothing was looked for.
     pub findings: Vec<Finding>,
+    /// Every hypothesis that these readings can speak of; empty where nothing was looked for.
+    pub evidence: Vec<Evidence>,
     /// One for each tag of the plant, in its order.
     pub tags: Vec<TagBalance>,
     /// One for each soft given.

@@ -19,8 +19,8 @@ mod search;
 mod verdict;
 
 pub use balance::{
-    Alternative, Balance, Finding, FindingKind, GlobalTest, Hypothesis, IndicatorBalance, Label, Outcome,
-    QuantityBalance, QuantityClass, Reading, TagBalance, TagClass, Verdict,
+    Alternative, Balance, Evidence, Finding, FindingKind, GlobalTest, Hypothesis, IndicatorBalance, Label,
+    Outcome, QuantityBalance, QuantityClass, Reading, TagBalance, TagClass, Verdict,
 };
 pub use compiled_plant::{Assumption, Basis, Check, CompiledPlant, Meter};
 pub use fault::{Fault, Position};

@@ -96,7 +96,10 @@ impl Instrument {
         }
         let number = reading.mean * self.tag.factor;
         let mut value = unit.to_si(number) + self.tag.offset;
-        let mut stated = self.stated_sigma(value, unit);
+        let mut stated = match reading.sigma {
+            Some(sigma) => unit.spread_to_si(sigma),
+            None => self.stated_sigma(value, unit),
+        };
         if let Some(cut_off) = self.tag.cut_off.filter(|cut_off| value < *cut_off) {
             (value, stated) = (0.0, cut_off / 2.0);
         }

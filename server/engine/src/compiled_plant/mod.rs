@@ -273,6 +273,7 @@ impl CompiledPlant {
             global_test,
             global_test_after: global_test,
             findings: Vec::new(),
+            evidence: Vec::new(),
             tags,
             givens,
             quantities,

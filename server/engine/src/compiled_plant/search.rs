@@ -6,7 +6,8 @@ use std::sync::{Arc, Mutex, PoisonError};
 
 use super::{CompiledPlant, Observations, Read};
 use crate::balance::{
-    Alternative, Balance, Finding, GlobalTest, Hypothesis, QuantityBalance, Reading, Verdict,
+    Alternative, Balance, Evidence as Told, Finding, GlobalTest, Hypothesis, QuantityBalance, Reading,
+    Verdict,
 };
 use crate::compile::Instrument;
 use crate::estimate::{self, Anchor, Direction, Response, Situation, Solution};
@@ -102,6 +103,7 @@ impl CompiledPlant {
         if live.candidate.is_empty() {
             return Ok(balance);
         }
+        balance.evidence = live.told();
         let limit = match &expected {
             Some(expected) if false_alarm_rate >= RAREST => expected.chance.limit(false_alarm_rate),
             Some(_) => bound(&live.evidence, false_alarm_rate),
@@ -185,21 +187,11 @@ impl CompiledPlant {
         Ok(live)
     }
 
-    /// Score and information of every hypothesis, SI.
+    /// Score and information of every hypothesis.
     #[cfg(test)]
-    pub(super) fn evidence(
-        &self,
-        observations: &Observations,
-        solution: &mut Solution,
-    ) -> Vec<(&Hypothesis, (f64, f64))> {
+    pub(super) fn evidence(&self, observations: &Observations, solution: &mut Solution) -> Vec<Told> {
         let all: Vec<u32> = (0..self.candidates.len() as u32).collect();
-        let live = self.live(observations, solution, &all).unwrap();
-        let one = |(at, number): (usize, &u32)| {
-            let size = live.size[at];
-            let told = (live.evidence.score[at] / size, live.evidence.own(at) / (size * size));
-            (&self.candidates[*number as usize].hypothesis, told)
-        };
-        live.candidate.iter().enumerate().map(one).collect()
+        self.live(observations, solution, &all).unwrap().told()
     }
 
     /// The direction of a hypothesis, and the sigma of its observation.
@@ -447,6 +439,16 @@ impl Live {
                 .collect(),
             information,
         };
+    }
+
+    /// Scores and information in SI.
+    fn told(&self) -> Vec<Told> {
+        let one = |(at, number): (usize, &u32)| Told {
+            hypothesis: *number as usize,
+            score: self.response[at].score,
+            information: self.response[at].information(&self.response[at], true),
+        };
+        self.candidate.iter().enumerate().map(one).collect()
     }
 }
 

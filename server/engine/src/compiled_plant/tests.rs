@@ -237,9 +237,10 @@ fn scores_and_information_give_the_published_likelihood_ratios() {
     let ratios = [1.570_817, 10.270_417, 0.244_017, 4.001_667, 2.884_267, 6.040_067];
     let biases = [1.535, 3.925, -0.605, -2.450, 2.080, -3.010];
     let leaks = [1.570_817, 13.2496, 0.3844, 6.040_067];
-    for (source, evidence) in compiled.evidence(&observations, &mut solution) {
-        let (ratio, estimate) = (evidence.0 * evidence.0 / evidence.1, evidence.0 / evidence.1 * 3.6);
-        let name = source.name.as_str();
+    for told in compiled.evidence(&observations, &mut solution) {
+        let (score, information) = (told.score, told.information);
+        let (ratio, estimate) = (score * score / information, score / information * 3.6);
+        let name = compiled.candidates[told.hypothesis].hypothesis.name.as_str();
         let number: usize = name.trim_start_matches(|c: char| !c.is_ascii_digit()).parse().unwrap();
         if name.starts_with("FT") {
             assert!((ratio - ratios[number - 1]).abs() < 1e-6, "{name}: {ratio}");

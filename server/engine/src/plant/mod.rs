@@ -4,4 +4,4 @@ mod model;
 mod parse;
 
 pub use model::*;
-pub use parse::{parse, parse_leniently};
+pub use parse::{parse, parse_leniently, revision};

@@ -95,8 +95,8 @@ fn heading(text: &str, at: usize) -> Option<(usize, &str)> {
     lines.rev().find(is_heading)
 }
 
-/// SHA-256 of the text in lower-case hexadecimal.
-fn revision(text: &str) -> String {
+/// The name of a revision: SHA-256 of the plant file's text in lower-case hexadecimal.
+pub fn revision(text: &str) -> String {
     Sha256::digest(text.as_bytes()).iter().fold(String::new(), |mut hexadecimal, byte| {
         // Writing to a string can't fail.
         let _ = write!(hexadecimal, "{byte:02x}");

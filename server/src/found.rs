@@ -7,11 +7,11 @@ use meterwright_engine::plant::Plant;
 
 use crate::log::{Log, LogFaults};
 use crate::period::{PeriodRule, Periods, Window, periods};
-use crate::steady::{Steady, SteadyRule, steady_periods};
+use crate::steady::{Rejection, Steady, SteadyRule, steady_periods};
 
 /// What makes a period.
-#[derive(Clone, Copy, Debug, ValueEnum)]
-pub(super) enum PeriodChoice {
+#[derive(Clone, Copy, Debug, PartialEq, Eq, ValueEnum)]
+pub enum PeriodChoice {
     /// A steady stretch, cut into periods of the plant file's length
     Steady,
     /// Each row, averaged already
@@ -20,17 +20,33 @@ pub(super) enum PeriodChoice {
     Whole,
 }
 
+impl PeriodChoice {
+    /// Its name, as on the command line.
+    pub fn name(self) -> &'static str {
+        match self {
+            Self::Steady => "steady",
+            Self::Row => "row",
+            Self::Whole => "whole",
+        }
+    }
+
+    /// The choice of a name.
+    pub fn named(name: &str) -> Option<Self> {
+        [Self::Steady, Self::Row, Self::Whole].into_iter().find(|choice| choice.name() == name)
+    }
+}
+
 /// The periods of a log.
-pub(super) struct Found<'l> {
-    pub(super) periods: Periods<'l>,
+pub(crate) struct Found<'l> {
+    pub(crate) periods: Periods<'l>,
     /// How many there are, if that is known before they are read.
-    pub(super) count: Option<usize>,
-    /// Lines about stretches that are no period, for standard error and the report.
-    pub(super) rejections: Vec<String>,
+    pub(crate) count: Option<usize>,
+    /// Stretches that are no period.
+    pub(crate) rejections: Vec<Rejection>,
     /// A line about the search for steady periods.
-    pub(super) summary: Option<String>,
+    pub(crate) summary: Option<String>,
     /// Tags that were to be watched and can't be.
-    pub(super) silent: Vec<Fault>,
+    pub(crate) silent: Vec<Fault>,
 }
 
 impl<'l> Found<'l> {
@@ -38,7 +54,7 @@ impl<'l> Found<'l> {
     ///
     /// # Errors
     /// The log can't be read again.
-    pub(super) fn of(
+    pub(crate) fn of(
         choice: PeriodChoice,
         plant: &Plant,
         log: &'l Log,
@@ -79,9 +95,9 @@ impl<'l> Found<'l> {
             });
         Self {
             count: Some(periods.len()),
-            rejections: rejections.iter().map(|rejection| rejection.told(zone)).collect(),
             summary: (!periods.is_empty() || !rejections.is_empty())
                 .then(|| summary(periods.len(), rejections.len(), length, &watched)),
+            rejections,
             silent: silent.collect(),
             periods: Box::new(periods.into_iter().map(Ok)),
         }

@@ -6,9 +6,17 @@
 
 mod average;
 pub mod command;
+mod found;
+mod hash;
+pub mod http;
 pub mod log;
 mod parallel;
 pub mod period;
+pub mod ready;
+pub mod record;
 pub mod report;
 mod series;
 pub mod steady;
+pub mod store;
+pub mod trend;
+pub mod work;

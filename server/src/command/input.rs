@@ -12,6 +12,7 @@ use meterwright_engine::{CompiledPlant, Fault, Position};
 use super::Status;
 use crate::log::{Expectation, Instants, Log, LogFaults, WrittenTime, instants};
 use crate::period::Window;
+use crate::ready::{self, TextFault};
 
 /// Why there is nothing more to write.
 pub(super) enum Stop {
@@ -93,7 +94,7 @@ impl Input {
                 ));
             }
         };
-        let counters = counters(&plant, &log);
+        let counters = ready::counters(&plant, &log);
         if !counters.is_empty() {
             return Err(Stop::Input(plant_faults(sources.plant, &text, &counters)));
         }
@@ -107,16 +108,7 @@ impl Input {
 /// What is wrong with it.
 pub(super) fn compiled(path: &Path) -> Result<(Plant, CompiledPlant), Stop> {
     let text = read(path)?;
-    let at = |faults: Vec<Fault>| Stop::Input(plant_faults(path, &text, &faults));
-    let (plant, mut faults) = plant::parse_leniently(&text);
-    let Some(plant) = plant else { return Err(at(faults)) };
-    match CompiledPlant::compile_with_indicators(&plant) {
-        Ok(compiled) if faults.is_empty() => Ok((plant, compiled)),
-        compiled => {
-            faults.extend(compiled.err().into_iter().flatten());
-            Err(at(faults))
-        }
-    }
+    ready::compiled(&text).map_err(|faults| Stop::Input(plant_faults(path, &text, &faults)))
 }
 
 /// The text of the plant file.
@@ -147,29 +139,10 @@ fn time(argument: Option<&str>, zone: &TimeZone) -> Result<Option<jiff::Timestam
     }
 }
 
-/// Counters of which the log has samples.
-fn counters(plant: &Plant, log: &Log) -> Vec<Fault> {
-    let tags = plant.tags.iter().zip(&log.expectation().tags).zip(log.sample_counts());
-    tags.filter(|((_, expected), count)| expected.is_counter && **count > 0)
-        .map(|((tag, _), _)| Fault {
-            span: tag.name.span,
-            message: format!(
-                "`{}` is a counter: what it reads is the rate over a period, which this version doesn't work out; leave its \
-                 column out of the log",
-                tag.name.value
-            ),
-        })
-        .collect()
-}
-
 pub(super) fn plant_faults(path: &Path, text: &str, faults: &[Fault]) -> Vec<String> {
-    let line = |fault: &Fault| {
-        let Position { line, column } = Position::of(text, fault.span.start);
-        format!("{}:{line}:{column}: {fault}", path.display())
-    };
-    let mut faults = faults.to_vec();
-    faults.sort();
-    faults.iter().map(line).collect()
+    let line =
+        |fault: &TextFault| format!("{}:{}:{}: {}", path.display(), fault.line, fault.column, fault.message);
+    ready::text_faults(text, faults).iter().map(line).collect()
 }
 
 pub(super) fn log_faults(path: &Path, faults: &LogFaults) -> Vec<String> {

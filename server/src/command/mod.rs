@@ -2,11 +2,11 @@
 
 mod check;
 mod completions;
-mod found;
 mod input;
 mod manual;
 mod progress;
 mod reconcile;
+mod serve;
 
 use std::ffi::OsString;
 use std::io::{self, Write};
@@ -26,6 +26,7 @@ struct Arguments {
 enum Command {
     Check(check::Arguments),
     Reconcile(reconcile::Arguments),
+    Serve(serve::Arguments),
     Completions(completions::Arguments),
     Manual(manual::Arguments),
 }
@@ -64,6 +65,7 @@ pub fn run(arguments: impl IntoIterator<Item = OsString>) -> ExitCode {
         Ok(Arguments { command }) => match command {
             Command::Check(arguments) => check::run(&arguments),
             Command::Reconcile(arguments) => reconcile::run(&arguments),
+            Command::Serve(arguments) => serve::run(&arguments),
             Command::Completions(arguments) => completions::run(&arguments),
             Command::Manual(arguments) => manual::run(&arguments),
         }

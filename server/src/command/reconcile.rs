@@ -9,9 +9,9 @@ use meterwright_engine::estimate::Anchor;
 use meterwright_engine::{Balance, CompiledPlant, Outcome};
 
 use super::Status;
-use super::found::{Found, PeriodChoice};
 use super::input::{Input, Sources, Stop, log_faults, notes, plant_faults, say};
 use super::progress::Progress;
+use crate::found::{Found, PeriodChoice};
 use crate::parallel;
 use crate::period::Period;
 use crate::report::{JsonReport, Labels, Report, TextReport};
@@ -78,11 +78,14 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
     let found = found.map_err(|faults| Stop::Input(log_faults(&arguments.log, &faults)))?;
     drop(reading);
     let silent = plant_faults(&arguments.plant, &input.text, &found.silent);
-    silent.iter().chain(&found.rejections).chain(&found.summary).for_each(say);
+    let zone = &input.log.expectation().zone;
+    let rejections: Vec<String> = found.rejections.iter().map(|rejection| rejection.told(zone)).collect();
+    silent.iter().chain(&rejections).chain(&found.summary).for_each(say);
     let run = Run {
         compiled: &input.compiled,
         report: &*report(&input, arguments),
         log: &arguments.log,
+        rejections: &rejections,
         false_alarm_rate: (!arguments.no_search).then_some(arguments.false_alarm_rate),
         is_for_people: !arguments.json,
     };
@@ -117,6 +120,8 @@ struct Run<'r> {
     compiled: &'r CompiledPlant,
     report: &'r dyn Report,
     log: &'r Path,
+    /// Lines about stretches that are no period.
+    rejections: &'r [String],
     /// Absent where no errors are looked for.
     false_alarm_rate: Option<f64>,
     is_for_people: bool,
@@ -128,7 +133,7 @@ impl Run<'_> {
     fn balance_all(&self, found: Found<'_>, notes: Vec<String>) -> Result<Tally, Stop> {
         let mut periods = found.periods.peekable();
         let anchor = match periods.peek() {
-            None if found.rejections.is_empty() => {
+            None if self.rejections.is_empty() => {
                 let fault = format!("{}:1:1: no row lies between the times given", self.log.display());
                 return Err(Stop::Input(vec![fault]));
             }
@@ -156,7 +161,7 @@ impl Run<'_> {
                 .map_err(Stop::Output)
         })?;
         if tally.made == 0 && self.is_for_people {
-            found.rejections.iter().try_for_each(|line| writeln!(output, "{line}")).map_err(Stop::Output)?;
+            self.rejections.iter().try_for_each(|line| writeln!(output, "{line}")).map_err(Stop::Output)?;
         }
         output.write_all(self.report.tail()).and_then(|()| output.flush()).map_err(Stop::Output)?;
         Ok(tally)

@@ -11,19 +11,22 @@ use super::words::{listed, probability};
 /// So many alternatives of a finding are named; the others are counted.
 const ALTERNATIVES: usize = 8;
 
-/// One paragraph a finding: what is wrong and by how much, what follows, and what these readings can't tell it from.
+/// One paragraph a finding.
 pub(super) fn findings(labels: &Labels<'_>, balance: &Balance) -> String {
-    let paragraph = |finding: &Finding| {
-        let error = labels.hypotheses[finding.hypothesis];
-        let sentences = [
-            what(labels, error, finding),
-            consequence(labels, error, finding, balance),
-            alternatives(labels, &finding.alternatives),
-        ];
-        let told: Vec<String> = sentences.into_iter().filter(|sentence| !sentence.is_empty()).collect();
-        wrapped(&told.join(" "), "  ")
-    };
+    let paragraph = |finding: &Finding| wrapped(&explanation(labels, balance, finding), "  ");
     balance.findings.iter().map(paragraph).collect()
+}
+
+/// What is wrong and by how much, what follows, and what these readings can't tell it from.
+pub(super) fn explanation(labels: &Labels<'_>, balance: &Balance, finding: &Finding) -> String {
+    let error = labels.hypotheses[finding.hypothesis];
+    let sentences = [
+        what(labels, error, finding),
+        consequence(labels, error, finding, balance),
+        alternatives(labels, &finding.alternatives),
+    ];
+    let told: Vec<String> = sentences.into_iter().filter(|sentence| !sentence.is_empty()).collect();
+    told.join(" ")
 }
 
 /// What is wrong, by how much and how probably.

@@ -1,6 +1,7 @@
 //! Balances as people and scripts read them.
 
 mod check;
+pub mod document;
 mod findings;
 mod json;
 mod number;
@@ -10,6 +11,8 @@ mod reads;
 mod table;
 mod text;
 mod words;
+
+pub(crate) use number::difference_unit;
 
 use std::borrow::Cow;
 
@@ -59,7 +62,7 @@ impl<'p> Labels<'p> {
     }
 
     /// Unit in which the size of an error is written: that of a difference, but per cent for a share of what tags read.
-    fn size_unit(&self, error: &Hypothesis) -> Cow<'static, str> {
+    pub(crate) fn size_unit(&self, error: &Hypothesis) -> Cow<'static, str> {
         let is_share = error.kind == FindingKind::Shared
             && self.shared(&error.at).is_some_and(|group| matches!(group.sigma, Spread::OfReading(_)));
         if is_share { error.unit.name() } else { number::difference_unit(error.unit) }

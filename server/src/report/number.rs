@@ -43,7 +43,7 @@ pub(super) fn two_digits(uncertainty: f64) -> String {
 }
 
 /// Name of the unit of a difference: 1 degC more is 1 K more, and it is no matter what a pressure counts from.
-pub(super) fn difference_unit(unit: Unit) -> Cow<'static, str> {
+pub(crate) fn difference_unit(unit: Unit) -> Cow<'static, str> {
     let name = unit.name();
     match (&*name, unit.reference()) {
         ("degC", _) => "K".into(),

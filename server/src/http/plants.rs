@@ -144,7 +144,7 @@ async fn plant(State(work): State<Arc<Work>>, Path(id): Path<String>) -> Result<
 
 /// Stores a new plant.
 #[utoipa::path(post, path = "/plants", request_body(content = String, content_type = "application/toml"),
-    responses((status = 201, body = Plant), (status = 409, body = Problem), (status = 422, body = Problem)))]
+    responses((status = 201, body = Plant), (status = 400, body = Problem), (status = 409, body = Problem), (status = 422, body = Problem)))]
 async fn create(State(work): State<Arc<Work>>, PlantText(text): PlantText) -> Result<Response, Problem> {
     let ready = work.plants.ready(&text).await.map_err(Problem::plant_file)?;
     let (name, hash) = (&ready.plant.name.value, &ready.plant.revision);
@@ -191,7 +191,7 @@ async fn revision(
 /// Stores a revision of a plant file. The last one again changes nothing and answers 200.
 #[utoipa::path(post, path = "/plants/{plant}/revisions", params(("plant" = String, Path), Validity),
     request_body(content = String, content_type = "application/toml"),
-    responses((status = 200, body = Plant), (status = 201, body = Plant), (status = 404, body = Problem),
+    responses((status = 200, body = Plant), (status = 201, body = Plant), (status = 400, body = Problem), (status = 404, body = Problem),
         (status = 409, body = Problem), (status = 422, body = Problem)))]
 async fn add_revision(
     State(work): State<Arc<Work>>,

@@ -1,0 +1,127 @@
+/** One balance on the page: what was found, how well everything agrees, and every value. */
+
+import { el, fill, goTo } from "./dom.js";
+import { findingItems } from "./finding.js";
+import { differenceUnit, shown, twoDigits } from "./number.js";
+import { link } from "./route.js";
+import { sheetRows } from "./sheet_model.js";
+import { sheetTable } from "./sheet.js";
+import { dataTable, linkButton, none } from "./table.js";
+import { stretch } from "./time.js";
+import { count, globalTest, listed } from "./words.js";
+
+/** Fills `place` with a balance. */
+export function showBalance(place, balance, zone) {
+  const title = el("h2", { class: "balance-title" }, stretch(balance.from, balance.to, zone));
+  const origin = el("p", { class: "hint" }, `Times in ${zone}. Balanced with revision ${balance.revision.number} of the ` +
+    `plant file, Meterwright ${balance.program_version}.`);
+  if (balance.superseded_by) {
+    origin.append(" A later log covers this time: its balance counts instead. ",
+      el("a", { href: link("shift", { log: balance.superseded_by }) }, "Show that log"));
+  }
+  if (!balance.converged) {
+    fill(place, title, origin, el("p", { class: "problem" }, el("strong", {}, "Not balanced: "),
+      balance.reason || "no state closes every balance."), warnings(balance));
+    return;
+  }
+  const tags = sheetTable(sheetRows(balance.tags, (tag) => tag.tag), {
+    id: "sheet", label: "Tags, the worst first", noun: "tag", heading: "Tag", read: "Read", hasTrend: true });
+  const sections = [
+    section("Findings", el("div", { id: "findings" },
+      el("p", { id: "global-test" }, globalTest(balance)),
+      findingItems(balance.findings, tags.goToRow, new Set(balance.tags.map((tag) => tag.tag)))),
+    balance.findings.length),
+    section("Warnings", warnings(balance), balance.warnings.length),
+    section("Out of service", balance.out_of_service.length > 0 && el("p", {}, listed(balance.out_of_service), "."),
+      balance.out_of_service.length),
+    section("Tags", tags.node, balance.tags.length),
+    section("Indicators", balance.indicators.length > 0 && indicators(balance), balance.indicators.length),
+    section("What really flowed", quantities(balance), balance.quantities.length),
+    section("Soft givens", givens(balance), balance.givens.length),
+  ].filter(Boolean);
+  fill(place, title, origin, jumps(sections), sections.map((part) => part.node));
+}
+
+/** A section with its heading; nothing where it would be empty. */
+function section(name, content, size) {
+  if (!content) return null;
+  const heading = el("h3", { tabindex: "-1" }, name);
+  return { name, size, heading, node: el("section", { class: "part" }, heading, content) };
+}
+
+function jumps(sections) {
+  const items = sections.map(({ name, size, heading }) =>
+    el("li", {}, linkButton(name, () => goTo(heading)), el("span", { class: "hint" }, ` ${size}`)));
+  return el("nav", { "aria-label": "Parts of the balance" }, el("ul", { class: "jumps" }, items));
+}
+
+function warnings(balance) {
+  return balance.warnings.length > 0 && el("ul", { class: "warnings" }, balance.warnings.map((text) => el("li", {}, text)));
+}
+
+function givens(balance) {
+  if (!balance.givens.length) return null;
+  return sheetTable(sheetRows(balance.givens, (given) => given.given), {
+    id: "givens", label: "Soft givens, the worst first", noun: "soft given", heading: "Given", read: "Stated",
+    hasTrend: false }).node;
+}
+
+/** A value with its uncertainty and unit, or that it can't be known. */
+export function value({ value: number, sigma, unit }) {
+  if (number === null) return none("can't be known from these meters");
+  const width = sigma > 0 ? ["± ", el("span", { class: "n" }, twoDigits(sigma))] : sigma === 0 ? "exact" : null;
+  return [el("span", { class: "n" }, shown(number, sigma)), " ", el("span", { class: "plus" }, width), " ",
+    el("span", { class: "unit" }, unit)];
+}
+
+const valueColumn = { heading: "Value ± u", hint: "Value and its standard uncertainty", isNumber: true, cell: value,
+  sort: (row) => row.value };
+const repeatColumn = { heading: "Repeatable to",
+  hint: "The part of the standard uncertainty that is drawn anew each period: what comparisons over time go by",
+  isNumber: true,
+  cell: (row) => (row.repeat_sigma > 0 ? ["± ", el("span", { class: "n" }, twoDigits(row.repeat_sigma)), " ",
+    el("span", { class: "unit" }, differenceUnit(row.unit))] : none(row.value === null ? "" : "not known")),
+  sort: (row) => row.repeat_sigma };
+
+function nameColumn(heading, name) {
+  return { heading, cell: (row) => el("a", { href: link("trend", { series: name(row) }), title: `Trend of ${name(row)}` },
+    name(row)), sort: name };
+}
+
+function indicators(balance) {
+  const name = (row) => row.indicator;
+  return dataTable({
+    id: "indicators", label: "Indicators", noun: "indicator", columns: [nameColumn("Indicator", name), valueColumn, repeatColumn],
+    rows: balance.indicators, key: name, search: name,
+  }).node;
+}
+
+/** What is said of how a quantity is known. */
+const CLASSES = {
+  redundant: "redundant: any one meter may be missing",
+  observable: "observable: follows from the meters",
+  unobservable: "can't be known from these meters",
+};
+
+function quantities(balance) {
+  const readers = new Map();
+  for (const { tag, quantity } of balance.tags) {
+    if (quantity !== null) readers.set(quantity, [...(readers.get(quantity) || []), tag]);
+  }
+  const how = (row) => {
+    const parts = [CLASSES[row.class]];
+    if (row.at_bound) parts.push("at its bound");
+    if (readers.has(row.quantity)) parts.push(`read by ${listed(readers.get(row.quantity))}`);
+    return parts.join("; ");
+  };
+  const name = (row) => row.quantity;
+  const unknown = balance.quantities.filter((row) => row.value === null).length;
+  return el("div", {},
+    unknown > 0 && el("p", {}, `${count(unknown, "quantity", "quantities")} can't be known from these meters.`),
+    dataTable({
+      id: "quantities", label: "What really flowed: balanced quantities", noun: "value",
+      columns: [nameColumn("Quantity", name), valueColumn, repeatColumn,
+        { heading: "How it is known", cell: how, sort: how }],
+      rows: balance.quantities, key: name, search: (row) => `${row.quantity} ${how(row)}`,
+    }).node);
+}

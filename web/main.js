@@ -1,0 +1,113 @@
+/**
+ * Meterwright's page. It knows the service only by its HTTP interface, and shows what the address after `#` says.
+ *
+ * From the ground up; no module imports one further down this list, but for the words and parts beside it:
+ *
+ *   dom.js          elements made in script, everything as text     words.js       pieces of sentences
+ *   number.js       digits and units                                time.js        the plant's clock
+ *   api.js          the service's paths and problems                events.js      what it tells unasked
+ *   route.js        the address after `#`                           state.js       plants, the chosen one, its logs
+ *   problem.js      problems and faults in words                    table.js       the sortable, filtered table
+ *
+ *   log_state.js    how one log stands                              progress.js    the strip under the drop zone
+ *   plant_text.js   the field for a plant file                      upload.js      drop, button, queue
+ *   sheet_model.js  the sheet as data                               sheet.js       the sheet as a table
+ *   finding.js      findings as sentences                           balance.js     one balance
+ *   trend_data.js   a trend as columns and words                    trend_plot.js  a trend as a plot
+ *
+ *   shift.js, logs.js, trend.js, findings.js, plant.js              one view each: `start` once, `show` at every visit
+ */
+
+import { byId, el, fill, goTo } from "./dom.js";
+import * as findings from "./findings.js";
+import * as logs from "./logs.js";
+import * as plant from "./plant.js";
+import { attempt, problemBox } from "./problem.js";
+import * as progress from "./progress.js";
+import { link, route, settle } from "./route.js";
+import * as shift from "./shift.js";
+import { choosePlant, loadPlants, on, state } from "./state.js";
+import * as trend from "./trend.js";
+import * as upload from "./upload.js";
+
+const VIEWS = {
+  shift: { name: "Shift", view: shift },
+  logs: { name: "Logs", view: logs },
+  trend: { name: "Trend", view: trend },
+  findings: { name: "Findings", view: findings },
+  plant: { name: "Plant", view: plant },
+};
+
+/** View that is seen now. */
+let seen = null;
+
+/** Brings the page to what the address says. */
+function follow() {
+  return attempt(byId("trouble"), async () => {
+    if (!state.plants.length) await loadPlants();
+    const wanted = route();
+    const known = state.plants.find((plant) => plant.id === wanted.plant);
+    if (!known && wanted.plant) {
+      fill(byId("trouble"), problemBox({ title: "No such plant", message: "The address names a plant that isn't here." }));
+    } else {
+      fill(byId("trouble"));
+    }
+    const plant = known || state.plants[0];
+    if (plant?.id !== wanted.plant) settle(plant ? { plant: plant.id } : { plant: null });
+    await choosePlant(plant?.id);
+    display();
+  });
+}
+
+/** Shows the view of the address and hides the others. */
+function display() {
+  const asked = VIEWS[route().view] ? route().view : "shift";
+  const name = state.plant ? asked : "plant";
+  const isNew = seen !== null && seen !== name;
+  seen = name;
+  drawViews(name);
+  for (const key of Object.keys(VIEWS)) byId(`view-${key}`).hidden = key !== name;
+  document.title = [VIEWS[name].name, state.plant?.name, "Meterwright"].filter(Boolean).join(" · ");
+  if (isNew) byId(`view-${name}`).querySelector("h1").focus({ preventScroll: true });
+  VIEWS[name].view.show();
+}
+
+function drawViews(current) {
+  fill(byId("views"), Object.entries(VIEWS).map(([key, { name }]) => el("li", {},
+    el("a", { href: link(key), "aria-current": key === current ? "page" : null }, name))));
+}
+
+function drawPlants() {
+  const select = byId("plant");
+  fill(select, state.plants.map((plant) => el("option", { value: plant.id }, plant.name)));
+  select.value = state.plant?.id || "";
+  select.disabled = state.plants.length === 0;
+}
+
+function drawLine() {
+  document.body.classList.toggle("cut-off", !state.isListening);
+  fill(byId("trouble"), !state.isListening && problemBox({
+    title: "The service doesn't answer",
+    message: "What is shown may be old. The page connects again by itself as soon as the service is there.",
+  }));
+}
+
+/** Links within the page: the address after `#` says what is shown, so these must not change it. */
+function leadWithin(id, target) {
+  byId(id).addEventListener("click", (event) => {
+    event.preventDefault();
+    goTo(byId(target));
+  });
+}
+
+leadWithin("skip", "main");
+leadWithin("to-cautions", "cautions");
+byId("plant").addEventListener("change", (event) => {
+  location.hash = link(seen, { plant: event.target.value });
+});
+on("plants", drawPlants);
+on("plant", drawPlants);
+on("line", drawLine);
+for (const part of [progress, upload, shift, logs, trend, plant]) part.start();
+addEventListener("hashchange", follow);
+follow();

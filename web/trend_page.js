@@ -1,0 +1,109 @@
+/** One trend on the page: its plot and everything the plot says, also in words and as a table. */
+
+import { byId, el, fill } from "./dom.js";
+import { differenceUnit, shown, twoDigits } from "./number.js";
+import { dataTable, measure, none } from "./table.js";
+import { stretch } from "./time.js";
+import { plotData, pointWords, slopeWords, summaryWords } from "./trend_data.js";
+import { plot } from "./trend_plot.js";
+
+/** The plot that is on the page. */
+let shownPlot = null;
+
+/**
+ * @param {Object} trend as the service tells it
+ * @param {string|undefined} description
+ * @param {string} zone
+ * @param {{onZoom: (from: number, to: number) => void}} heard
+ */
+export function showTrend(trend, description, zone, { onZoom }) {
+  shownPlot?.destroy();
+  shownPlot = null;
+  const { columns, points, breaks } = plotData(trend);
+  fill(byId("trend-title"), trend.series, description && el("span", { class: "description" }, description));
+  fill(byId("slope"), slopeWords(trend));
+  if (!points.length) {
+    fill(byId("trend"), el("p", {}, "There is no balance in this stretch of time. Choose a longer one."));
+    fill(byId("trend-notes"));
+    return;
+  }
+  const words = (row) => (points[row] === null
+    ? `Break ${breaks.find((change) => change.time === columns[0][row]).number}: ` +
+      breaks.find((change) => change.time === columns[0][row]).causes.join("; ")
+    : pointWords(trend, points[row], zone));
+  const readout = el("p", { class: "readout" });
+  const hint = "Point at the plot, or move the slider, to read out a value. Drag across the plot to look closer.";
+  const read = (row) => {
+    readout.textContent = row === null || row === undefined ? hint : words(row);
+  };
+  read(null);
+  const slider = el("input", {
+    type: "range", min: 0, max: points.length - 1, value: points.length - 1, class: "cursor",
+    "aria-label": "Point of the plot to read out", "aria-valuetext": words(points.length - 1),
+    oninput: () => {
+      const row = Number(slider.value);
+      shownPlot.showRow(row);
+      read(row);
+      slider.setAttribute("aria-valuetext", words(row));
+    },
+  });
+  const box = el("div", { role: "img", "aria-label": `Plot of ${trend.series}. ${summaryWords(trend, zone)}` });
+  fill(byId("trend"), legend(trend), box, slider, readout);
+  shownPlot = plot(box, { columns, breaks, unit: trend.unit, hasReadings: Boolean(trend.measured), zone }, { onRow: read, onZoom });
+  fill(byId("trend-notes"), breakList(breaks), el("h3", {}, "In figures"),
+    el("p", { id: "trend-summary" }, summaryWords(trend, zone)), table(trend, zone));
+}
+
+function legend(trend) {
+  const isKnown = trend.repeat_sigma.some((sigma) => sigma !== null);
+  const entry = (mark, text) => el("li", {}, el("span", { class: `mark ${mark}`, "aria-hidden": "true" }), text);
+  return el("ul", { class: "legend" },
+    entry("line", `balanced value, ${trend.unit}`),
+    isKnown
+      ? entry("band", "value ± 1.96 of the uncertainty that is drawn anew each period (95 %)")
+      : entry("band", "no band: the repeatability isn't known"),
+    trend.measured && entry("reading", "as read"),
+    trend.breaks.length > 0 && entry("break", "break: what stands behind the values changes"));
+}
+
+function breakList(breaks) {
+  if (!breaks.length) return null;
+  return el("div", {},
+    el("h3", {}, "Breaks"),
+    el("p", { class: "hint" }, "No line is drawn through a break: values on its two sides rest on different things."),
+    el("ol", { class: "breaks" }, breaks.map((change) => el("li", {}, change.causes.join("; ")))));
+}
+
+/** The plotted data as a table, made when it is opened. */
+function table(trend, zone) {
+  const details = el("details", { id: "trend-table" }, el("summary", {}, "The plotted data as a table"));
+  details.addEventListener("toggle", () => details.append(tableOf(trend, zone)), { once: true });
+  return details;
+}
+
+function tableOf(trend, zone) {
+  const width = (of) => ({
+    isNumber: true,
+    cell: (index) => (of[index] > 0 ? measure(`± ${twoDigits(of[index])}`, differenceUnit(trend.unit)) : none("")),
+    sort: (index) => of[index],
+  });
+  const column = (of) => ({
+    isNumber: true,
+    cell: (index) => (of[index] === null ? none("can't be known") : measure(shown(of[index], trend.sigma[index]), trend.unit)),
+    sort: (index) => of[index],
+  });
+  return dataTable({
+    label: `Values of ${trend.series}`,
+    noun: "value",
+    rows: trend.from.map((_, index) => index),
+    key: String,
+    columns: [
+      { heading: "Period", cell: (index) => stretch(trend.from[index], trend.to[index], zone), sort: (index) => trend.from[index] },
+      { heading: "Value", ...column(trend.value) },
+      { heading: "u", hint: "Standard uncertainty", ...width(trend.sigma) },
+      { heading: "Repeatable to", ...width(trend.repeat_sigma) },
+      trend.measured && { heading: "Read", ...column(trend.measured) },
+    ].filter(Boolean),
+    sort: { column: 0, order: "ascending" },
+  }).node;
+}

@@ -107,6 +107,95 @@ fn no_floor_of_the_engine_names_one_above_it() {
     assert_eq!(wrong, Vec::<String>::new());
 }
 
+/// The service's floors from the ground; a file may name its own floor and those before it.
+const SERVICE_FLOORS: &[&[&str]] = &[
+    &["hash", "parallel", "average"],
+    &["log"],
+    &["series"],
+    &["period"],
+    &["steady"],
+    &["found"],
+    &["report"],
+    &["ready", "record", "demo"],
+    &["store"],
+    &["trend", "work"],
+    &["http"],
+    &["command"],
+];
+
+#[test]
+fn no_floor_of_the_service_names_one_above_it() {
+    let floor = |module: &str| SERVICE_FLOORS.iter().rposition(|floor| floor.contains(&module));
+    let mut wrong = Vec::new();
+    for path in files("server/src", ".rs") {
+        let relative = path.strip_prefix(root().join("server/src")).unwrap();
+        let own = relative.components().next().unwrap().as_os_str().to_string_lossy().replace(".rs", "");
+        if ["lib", "main"].contains(&own.as_str()) {
+            continue;
+        }
+        let own_floor =
+            floor(&own).unwrap_or_else(|| panic!("`{own}` has no floor: add it to SERVICE_FLOORS"));
+        for (number, line) in fs::read_to_string(&path).unwrap().lines().enumerate() {
+            for used in line.split("crate::").skip(1) {
+                let module: String = used.chars().take_while(|c| c.is_alphanumeric() || *c == '_').collect();
+                if floor(&module).is_some_and(|floor| floor > own_floor) {
+                    wrong.push(format!("{}:{}: {}", relative.display(), number + 1, line.trim()));
+                }
+            }
+        }
+    }
+    assert_eq!(wrong, Vec::<String>::new());
+}
+
+#[test]
+fn only_the_store_knows_sql_and_only_the_outer_floors_http() {
+    let is_in = |line: &str, folders: &[&str]| folders.iter().any(|folder| line.starts_with(folder));
+    let mut wrong = lines_with("server", &["sqlx::", "SELECT ", "INSERT INTO", "UPDATE logs", "DELETE FROM"]);
+    wrong.retain(|line| !is_in(line, &["server/src/store/"]));
+    let mut http = lines_with("server", &["axum::", "StatusCode"]);
+    http.retain(|line| !is_in(line, &["server/src/http/"]));
+    assert_eq!([wrong, http].concat(), Vec::<String>::new());
+}
+
+#[test]
+fn what_others_made_of_the_page_is_what_they_published() {
+    let folder = root().join("web/vendor");
+    let checksums = fs::read_to_string(folder.join("CHECKSUMS")).unwrap();
+    let mut listed: Vec<&str> =
+        checksums.lines().filter_map(|line| line.split_once("  ")).map(|(_, name)| name).collect();
+    listed.sort_unstable();
+    let there: Vec<String> = files("web/vendor", "")
+        .iter()
+        .map(|path| path.strip_prefix(&folder).unwrap().display().to_string())
+        .filter(|name| name != "CHECKSUMS")
+        .collect();
+    assert_eq!(listed, there, "every file has its checksum");
+    for library in there.iter().filter_map(|name| name.split_once('/')).map(|(library, _)| library) {
+        assert!(listed.contains(&format!("{library}/LICENSE").as_str()), "{library} has its licence");
+    }
+    let checked = Command::new("sha256sum")
+        .args(["--check", "--strict", "--quiet", "CHECKSUMS"])
+        .current_dir(&folder)
+        .output()
+        .unwrap();
+    assert!(checked.status.success(), "{}", String::from_utf8_lossy(&checked.stdout));
+}
+
+#[test]
+fn the_page_asks_no_other_host_and_writes_no_markup() {
+    for ending in [".js", ".html", ".css"] {
+        for path in files("web", ending) {
+            if path.starts_with(root().join("web/vendor")) {
+                continue;
+            }
+            let text = fs::read_to_string(&path).unwrap();
+            for word in ["http://", "https://", "innerHTML", "outerHTML", "insertAdjacentHTML", "eval("] {
+                assert!(!text.contains(word), "{} has `{word}`", path.display());
+            }
+        }
+    }
+}
+
 #[test]
 fn only_the_agreed_names_stand_at_the_top() {
     let agreed = ["Cargo.toml", "Cargo.lock", "README.md", "DEVELOPERS.md", "LICENSE"];
@@ -139,12 +228,17 @@ fn the_readme_names_every_kind_option_and_function() {
             assert!(readme.contains(&format!("`{name}")), "README.md lacks `{name}` of a {}", kind.name());
         }
     }
-    let help =
-        Command::new(env!("CARGO_BIN_EXE_meterwright")).args(["reconcile", "--help"]).output().unwrap();
-    let help = String::from_utf8(help.stdout).unwrap();
-    let options = help.split_whitespace().filter(|word| word.starts_with("--") && *word != "--help");
-    for option in options.map(|word| word.trim_end_matches(',')) {
-        assert!(readme.contains(&format!("`{option}")), "README.md lacks the option {option}");
+    for command in ["reconcile", "check", "serve", "demo"] {
+        let help =
+            Command::new(env!("CARGO_BIN_EXE_meterwright")).args([command, "--help"]).output().unwrap();
+        let help = String::from_utf8(help.stdout).unwrap();
+        let options = help.split_whitespace().filter(|word| word.starts_with("--") && *word != "--help");
+        for option in options.map(|word| word.trim_end_matches(|c: char| !c.is_ascii_alphabetic())) {
+            assert!(
+                readme.contains(&format!("`{option}")),
+                "README.md lacks the option {option} of {command}"
+            );
+        }
     }
     let functions = fs::read_to_string(root().join("server/engine/src/formula/function.rs")).unwrap();
     let names: Vec<&str> =

@@ -6,7 +6,8 @@
 
 mod average;
 pub mod command;
-mod found;
+pub mod demo;
+pub mod found;
 mod hash;
 pub mod http;
 pub mod log;

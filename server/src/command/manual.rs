@@ -14,7 +14,7 @@ pub(super) struct Arguments {
 }
 
 /// The commands that have a page of their own; a test holds them to those that there are.
-const COMMANDS: [&str; 5] = ["check", "reconcile", "serve", "completions", "manual"];
+const COMMANDS: [&str; 6] = ["check", "reconcile", "serve", "demo", "completions", "manual"];
 
 pub(super) fn run(arguments: &Arguments) -> Status {
     let mut program = super::Arguments::command();

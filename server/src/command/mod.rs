@@ -2,6 +2,7 @@
 
 mod check;
 mod completions;
+mod demo;
 mod input;
 mod manual;
 mod progress;
@@ -27,6 +28,7 @@ enum Command {
     Check(check::Arguments),
     Reconcile(reconcile::Arguments),
     Serve(serve::Arguments),
+    Demo(demo::Arguments),
     Completions(completions::Arguments),
     Manual(manual::Arguments),
 }
@@ -66,6 +68,7 @@ pub fn run(arguments: impl IntoIterator<Item = OsString>) -> ExitCode {
             Command::Check(arguments) => check::run(&arguments),
             Command::Reconcile(arguments) => reconcile::run(&arguments),
             Command::Serve(arguments) => serve::run(&arguments),
+            Command::Demo(arguments) => demo::run(&arguments),
             Command::Completions(arguments) => completions::run(&arguments),
             Command::Manual(arguments) => manual::run(&arguments),
         }

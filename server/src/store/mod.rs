@@ -60,8 +60,8 @@ pub struct Store {
 
 /// So many readers at once.
 const READERS: u32 = 4;
-/// Size of a page: a record fills one.
-const PAGE_SIZE: u32 = 8192;
+/// Size of a page: a record of some 5,500 bytes fills one and a part of another.
+const PAGE_SIZE: u32 = 4096;
 
 impl Store {
     /// Opens the store in a file, which is made if it isn't there, and brings it to the form of this version.

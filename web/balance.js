@@ -2,11 +2,11 @@
 
 import { el, fill, goTo } from "./dom.js";
 import { findingItems } from "./finding.js";
-import { differenceUnit, shown, twoDigits } from "./number.js";
+import { shown, twoDigits } from "./number.js";
 import { link } from "./route.js";
 import { sheetRows } from "./sheet_model.js";
 import { sheetTable } from "./sheet.js";
-import { dataTable, linkButton, none } from "./table.js";
+import { dataTable, linkButton, none, repeatCell } from "./table.js";
 import { stretch } from "./time.js";
 import { count, globalTest, listed } from "./words.js";
 
@@ -79,8 +79,7 @@ const valueColumn = { heading: "Value ± u", hint: "Value and its standard uncer
 const repeatColumn = { heading: "Repeatable to",
   hint: "The part of the standard uncertainty that is drawn anew each period: what comparisons over time go by",
   isNumber: true,
-  cell: (row) => (row.repeat_sigma > 0 ? ["± ", el("span", { class: "n" }, twoDigits(row.repeat_sigma)), " ",
-    el("span", { class: "unit" }, differenceUnit(row.unit))] : none(row.value === null ? "" : "not known")),
+  cell: (row) => repeatCell(row.repeat_sigma, row.sigma, row.unit),
   sort: (row) => row.repeat_sigma };
 
 function nameColumn(heading, name) {
@@ -98,8 +97,8 @@ function indicators(balance) {
 
 /** What is said of how a quantity is known. */
 const CLASSES = {
-  redundant: "redundant: any one meter may be missing",
-  observable: "observable: follows from the meters",
+  redundant: "redundant: read, and checked by other meters",
+  observable: "observable: follows from what is read or given",
   unobservable: "can't be known from these meters",
 };
 

@@ -1,10 +1,9 @@
 /** Findings as sentences, with what else could explain the same readings. */
 
 import { el } from "./dom.js";
-import { estimate } from "./number.js";
 import { link } from "./route.js";
 import { linkButton } from "./table.js";
-import { KINDS, probability } from "./words.js";
+import { listed, probability } from "./words.js";
 
 /**
  * @param {Object[]} findings
@@ -21,11 +20,10 @@ function item(finding, linkTags) {
   return el("li", {},
     el("p", { class: "sentence" }, linkTags(finding.sentence)),
     el("p", { class: "hint" },
-      `${KINDS[finding.kind]} of `, linkTags(finding.at),
-      `: ${estimate(finding.estimate, finding.sigma, finding.unit)}; probability ${probability(finding.probability)}. `,
+      `Probability ${probability(finding.probability)}. `,
       others.length
-        ? ["These readings can't tell it from an error of ", linkTags(others.join(", ")), "."]
-        : "No other single error explains these readings nearly as well."));
+        ? ["These readings can't tell it from an error of ", linkTags(listed(others, "or")), "."]
+        : "Nothing else explains these readings nearly as well."));
 }
 
 /** A text in which the names of tags lead to their rows. */

@@ -41,14 +41,24 @@ export function logStateNode(log) {
 }
 
 function actionsOf(log, trouble) {
-  const does = (work) => () => attempt(trouble, async () => noteLog(await work(log.id)));
+  const does = (work, doing) => async (event) => {
+    const pressed = event.currentTarget;
+    const words = pressed.textContent;
+    // What is being balanced is finished first, so that cancelling takes a while.
+    pressed.disabled = true;
+    pressed.textContent = doing;
+    await attempt(trouble, async () => noteLog(await work(log.id)), () => {
+      pressed.disabled = false;
+      pressed.textContent = words;
+    });
+  };
   const show = log.balance_count > 0 && el("a", { href: link("shift", { log: log.id }) }, "Show the balances");
   switch (log.state) {
     case "waiting":
-    case "working": return button("Cancel", does(api.cancelLog), { "aria-label": `Cancel the work on ${log.name}` });
+    case "working": return button("Cancel", does(api.cancelLog, "Cancelling …"), { "aria-label": `Cancel the work on ${log.name}` });
     case "failed":
     case "cancelled":
-      return [button("Begin again", does(api.restartLog), { "aria-label": `Begin again with ${log.name}` }), show];
+      return [button("Begin again", does(api.restartLog, "Beginning …"), { "aria-label": `Begin again with ${log.name}` }), show];
     default: return show;
   }
 }

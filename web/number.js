@@ -34,6 +34,11 @@ export function twoDigits(uncertainty) {
   return written(uncertainty, decimals(uncertainty, uncertainty));
 }
 
+/** Whether a part of an uncertainty is nothing beside the whole. */
+export function isNegligible(part, whole) {
+  return part <= whole / 1000;
+}
+
 const GAUGE = /^([kM]?Pa|m?bar|psi|inHg|mmHg|mmH2O|inH2O|kgf\/cm2)g$/;
 
 /** Unit of a difference: 1 degC more is 1 K more, and it is no matter what a pressure counts from. */

@@ -120,7 +120,7 @@ async function loadRevision() {
 }
 
 function since(entry, zone) {
-  return entry.valid_from === null ? "ever" : stamp(entry.valid_from, zone);
+  return entry.valid_from === null ? "the beginning" : stamp(entry.valid_from, zone);
 }
 
 function list() {

@@ -7,7 +7,9 @@ import { announce, el, fill } from "./dom.js";
 import { faultList } from "./problem.js";
 import { count } from "./words.js";
 
-/** What is written between the gutter and the list, by line. */
+/** Height of a line in the size of the text, as the style sheet has it. */
+const LINE_HEIGHT = 1.5;
+
 function byLine(faults) {
   const lines = new Map();
   for (const fault of faults) lines.set(fault.line, [...(lines.get(fault.line) || []), fault]);
@@ -22,8 +24,9 @@ function byLine(faults) {
 export function plantText({ id, label }) {
   let draftKey = null;
   let faults = [];
-  const gutter = el("div", { class: "gutter", "aria-hidden": "true" });
-  const marks = el("pre", { class: "marks", "aria-hidden": "true" });
+  let isDrawing = false;
+  const gutter = el("pre", { class: "gutter", "aria-hidden": "true" });
+  const marks = el("pre", {});
   const list = el("div", { id: `${id}-faults` });
   const area = el("textarea", {
     id, rows: 22, wrap: "off", spellcheck: "false", autocapitalize: "off", autocomplete: "off",
@@ -32,23 +35,27 @@ export function plantText({ id, label }) {
 
   /** The layers beneath scroll with the text. */
   function follow() {
-    gutter.scrollTop = marks.scrollTop = area.scrollTop;
-    marks.scrollLeft = area.scrollLeft;
+    gutter.scrollTop = area.scrollTop;
+    marks.style.transform = `translate(${-area.scrollLeft}px, ${-area.scrollTop}px)`;
   }
 
+  /** A paste is told of line by line: what is drawn waits for its end. */
   function edited() {
-    if (draftKey) sessionStorage.setItem(draftKey, area.value);
-    draw();
+    if (isDrawing) return;
+    isDrawing = true;
+    requestAnimationFrame(() => {
+      isDrawing = false;
+      if (draftKey) sessionStorage.setItem(draftKey, area.value);
+      draw();
+    });
   }
 
   function draw() {
     const lines = area.value.split("\n");
-    const wrong = byLine(faults);
-    fill(gutter, lines.map((_, place) => {
-      const isWrong = wrong.has(place + 1);
-      return el("div", { class: isWrong ? "wrong" : null }, isWrong ? `✖ ${place + 1}` : String(place + 1));
-    }));
-    fill(marks, lines.map((line, place) => el("div", {}, marked(line, wrong.get(place + 1)))));
+    const wrong = [...byLine(faults)].filter(([line]) => line <= lines.length);
+    fill(gutter, lines.map((_, place) => place + 1).join("\n"),
+      wrong.map(([line]) => atLine(line, { class: "wrong" }, `✖ ${line}`)));
+    fill(marks, wrong.map(([line, found]) => atLine(line, {}, marked(lines[line - 1], found))));
     follow();
   }
 
@@ -57,8 +64,7 @@ export function plantText({ id, label }) {
     const start = before.reduce((sum, line) => sum + line.length + 1, 0) + fault.column - 1;
     area.focus();
     area.setSelectionRange(start, start + wordLength(area.value.slice(start)));
-    const lineHeight = area.scrollHeight / area.value.split("\n").length;
-    area.scrollTop = Math.max(0, (fault.line - 6) * lineHeight);
+    area.scrollTop = Math.max(0, (fault.line - 6) * LINE_HEIGHT * parseFloat(getComputedStyle(area).fontSize));
   }
 
   function showFaults(found) {
@@ -72,7 +78,8 @@ export function plantText({ id, label }) {
 
   return {
     node: el("div", { class: "plant-text" },
-      el("label", { for: id }, label), el("div", { class: "editor" }, gutter, el("div", { class: "layers" }, marks, area)), list),
+      el("label", { for: id }, label), el("div", { class: "editor" }, gutter, el("div", { class: "layers" },
+        el("div", { class: "marks", "aria-hidden": "true" }, marks), area)), list),
     text: () => area.value,
     /** Puts in a text, or what was made of it and not yet taken: `draft` names it. */
     set(text, draft) {
@@ -83,8 +90,8 @@ export function plantText({ id, label }) {
     /** Puts in a text as if it had been typed. */
     type(text) {
       area.value = text;
-      showFaults([]);
       edited();
+      showFaults([]);
     },
     showFaults,
     taken() {
@@ -99,8 +106,15 @@ function wordLength(text) {
   return Math.max(1, text.match(/^("[^"\n]*"|[^\s,}\]]*)/)[0].length);
 }
 
-/** A line with its wrong words marked; an empty one keeps its height. */
-function marked(line, faults = []) {
+/** Something that lies over a line of the text. */
+function atLine(line, attributes, ...children) {
+  const node = el("div", attributes, children);
+  node.style.top = `calc(var(--text-top) + ${(line - 1) * LINE_HEIGHT}em)`;
+  return node;
+}
+
+/** A line with its wrong words marked. */
+function marked(line, faults) {
   const parts = [];
   let done = 0;
   for (const { column } of [...faults].sort((a, b) => a.column - b.column)) {
@@ -110,5 +124,5 @@ function marked(line, faults = []) {
     parts.push(line.slice(done, start), el("mark", {}, line.slice(start, end) || " "));
     done = end;
   }
-  return [...parts, line.slice(done) || "\u200b"];
+  return parts;
 }

@@ -14,13 +14,15 @@ export function problemBox(problem, again) {
  * jumps.
  * @param {HTMLElement} place
  * @param {() => Promise<void>} work
+ * @param {() => void} [onProblem] what else is to be done about a problem
  */
-export async function attempt(place, work) {
+export async function attempt(place, work, onProblem = () => {}) {
   try {
     await work();
   } catch (error) {
     if (error.name === "AbortError") return;
-    fill(place, problemBox(error, () => attempt(place, work)));
+    fill(place, problemBox(error, () => attempt(place, work, onProblem)));
+    onProblem();
     // What isn't the service's or the network's is a fault of the page, and belongs on the console too.
     if (error.status === undefined) throw error;
   }

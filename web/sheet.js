@@ -5,7 +5,7 @@ import { link } from "./route.js";
 import { dataTable, measure, none } from "./table.js";
 
 /** What a statistic of nothing means. */
-const UNTESTED = "not tested";
+const UNTESTED = "untested";
 
 /**
  * @param {import("./sheet_model.js").SheetRow[]} rows

@@ -1,6 +1,7 @@
 /** One table for all: sortable by its headings, filtered as one types, scrolling in its own box where it is too wide. */
 
 import { button, el, fill, goTo } from "./dom.js";
+import { differenceUnit, isNegligible, twoDigits } from "./number.js";
 import { count } from "./words.js";
 
 /**
@@ -97,6 +98,12 @@ function comparison(value, order) {
 /** A number and its unit, the unit set apart so that numbers stand beneath one another. */
 export function measure(number, unit) {
   return [el("span", { class: "n" }, number), " ", el("span", { class: "unit" }, unit)];
+}
+
+/** A repeatability; one that is nothing beside the whole uncertainty has no digits worth reading. */
+export function repeatCell(repeat, sigma, unit) {
+  if (repeat === null) return none("not known");
+  return isNegligible(repeat, sigma) ? none("negligible") : measure(`± ${twoDigits(repeat)}`, differenceUnit(unit));
 }
 
 /** What stands where there is no number. */

@@ -29,7 +29,8 @@ export function start() {
     const end = to && day(Date.parse(`${to}T12:00Z`) + DAY, "UTC");
     change({ range: null, from: from && instant(from, zone), to: end && instant(end, zone) });
   });
-  on("plants", () => route().view === "trend" && show());
+  // A new log lengthens every trend.
+  on("plants", () => state.plant && !byId("view-trend").hidden && show());
 }
 
 export function show() {

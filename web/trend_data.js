@@ -1,13 +1,13 @@
 /** A trend as columns to plot, and as words. */
 
-import { COVERAGE, differenceUnit, estimate, decimals, shown, twoDigits, written } from "./number.js";
+import { COVERAGE, decimals, differenceUnit, estimate, isNegligible, shown, twoDigits, written } from "./number.js";
 import { stretch } from "./time.js";
 import { count } from "./words.js";
 
 /**
  * Columns for the plot. Between the values on the two sides of a break stands a row without any, so that no line is
  * drawn through it.
- * @returns {{columns: Array[], points: (number|null)[], breaks: {time: number, number: number, causes: string[]}[]}}
+ * @returns {{columns: Array[], points: (number|null)[], breaks: {time: number, at: number, number: number, causes: string[]}[]}}
  *   `columns`: times (ms), lower and upper edge of the band, value, reading; `points`: for each row the index into the
  *   trend, or null at a break
  */
@@ -25,7 +25,7 @@ export function plotData(trend) {
     const change = index > 0 && causes.get(trend.from[index]);
     if (change) {
       const time = (middle(index - 1) + middle(index)) / 2;
-      breaks.push({ time, number: breaks.length + 1, causes: change });
+      breaks.push({ time, at: trend.from[index], number: breaks.length + 1, causes: change });
       row(null, [time, null, null, null, null]);
     }
     const reach = trend.repeat_sigma[index] === null || value === null ? null : trend.repeat_sigma[index] * COVERAGE;
@@ -41,7 +41,7 @@ export function pointWords(trend, index, zone) {
   const parts = [`${stretch(trend.from[index], trend.to[index], zone)}: ` +
     estimate(trend.value[index], trend.sigma[index], unit)];
   const repeat = trend.repeat_sigma[index];
-  if (repeat > 0) parts.push(`repeatable to ± ${twoDigits(repeat)} ${differenceUnit(unit)}`);
+  if (repeat !== null && !isNegligible(repeat, trend.sigma[index])) parts.push(`repeatable to ± ${twoDigits(repeat)} ${differenceUnit(unit)}`);
   const read = trend.measured?.[index];
   if (trend.measured) parts.push(read === null ? "no reading" : `read ${shown(read, trend.sigma[index])} ${unit}`);
   return parts.join("; ");

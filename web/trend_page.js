@@ -2,8 +2,8 @@
 
 import { byId, el, fill } from "./dom.js";
 import { differenceUnit, shown, twoDigits } from "./number.js";
-import { dataTable, measure, none } from "./table.js";
-import { stretch } from "./time.js";
+import { dataTable, measure, none, repeatCell } from "./table.js";
+import { stamp, stretch } from "./time.js";
 import { plotData, pointWords, slopeWords, summaryWords } from "./trend_data.js";
 import { plot } from "./trend_plot.js";
 
@@ -50,7 +50,7 @@ export function showTrend(trend, description, zone, { onZoom }) {
   const box = el("div", { role: "img", "aria-label": `Plot of ${trend.series}. ${summaryWords(trend, zone)}` });
   fill(byId("trend"), legend(trend), box, slider, readout);
   shownPlot = plot(box, { columns, breaks, unit: trend.unit, hasReadings: Boolean(trend.measured), zone }, { onRow: read, onZoom });
-  fill(byId("trend-notes"), breakList(breaks), el("h3", {}, "In figures"),
+  fill(byId("trend-notes"), breakList(breaks, zone), el("h3", {}, "In figures"),
     el("p", { id: "trend-summary" }, summaryWords(trend, zone)), table(trend, zone));
 }
 
@@ -66,12 +66,13 @@ function legend(trend) {
     trend.breaks.length > 0 && entry("break", "break: what stands behind the values changes"));
 }
 
-function breakList(breaks) {
+function breakList(breaks, zone) {
   if (!breaks.length) return null;
   return el("div", {},
     el("h3", {}, "Breaks"),
     el("p", { class: "hint" }, "No line is drawn through a break: values on its two sides rest on different things."),
-    el("ol", { class: "breaks" }, breaks.map((change) => el("li", {}, change.causes.join("; ")))));
+    el("ol", { class: "breaks" }, breaks.map((change) =>
+      el("li", {}, `from ${stamp(change.at, zone)}: ${change.causes.join("; ")}`))));
 }
 
 /** The plotted data as a table, made when it is opened. */
@@ -82,11 +83,8 @@ function table(trend, zone) {
 }
 
 function tableOf(trend, zone) {
-  const width = (of) => ({
-    isNumber: true,
-    cell: (index) => (of[index] > 0 ? measure(`± ${twoDigits(of[index])}`, differenceUnit(trend.unit)) : none("")),
-    sort: (index) => of[index],
-  });
+  const uncertainty = (index) => (trend.sigma[index] > 0
+    ? measure(`± ${twoDigits(trend.sigma[index])}`, differenceUnit(trend.unit)) : none(""));
   const column = (of) => ({
     isNumber: true,
     cell: (index) => (of[index] === null ? none("can't be known") : measure(shown(of[index], trend.sigma[index]), trend.unit)),
@@ -100,8 +98,9 @@ function tableOf(trend, zone) {
     columns: [
       { heading: "Period", cell: (index) => stretch(trend.from[index], trend.to[index], zone), sort: (index) => trend.from[index] },
       { heading: "Value", ...column(trend.value) },
-      { heading: "u", hint: "Standard uncertainty", ...width(trend.sigma) },
-      { heading: "Repeatable to", ...width(trend.repeat_sigma) },
+      { heading: "u", hint: "Standard uncertainty", isNumber: true, cell: uncertainty, sort: (index) => trend.sigma[index] },
+      { heading: "Repeatable to", isNumber: true, sort: (index) => trend.repeat_sigma[index],
+        cell: (index) => repeatCell(trend.repeat_sigma[index], trend.sigma[index], trend.unit) },
       trend.measured && { heading: "Read", ...column(trend.measured) },
     ].filter(Boolean),
     sort: { column: 0, order: "ascending" },

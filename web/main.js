@@ -30,13 +30,7 @@ import { choosePlant, loadPlants, on, state } from "./state.js";
 import * as trend from "./trend.js";
 import * as upload from "./upload.js";
 
-const VIEWS = {
-  shift: { name: "Shift", view: shift },
-  logs: { name: "Logs", view: logs },
-  trend: { name: "Trend", view: trend },
-  findings: { name: "Findings", view: findings },
-  plant: { name: "Plant", view: plant },
-};
+const VIEWS = { shift, logs, trend, findings, plant };
 
 /** View that is seen now. */
 let seen = null;
@@ -67,14 +61,18 @@ function display() {
   seen = name;
   drawViews(name);
   for (const key of Object.keys(VIEWS)) byId(`view-${key}`).hidden = key !== name;
-  document.title = [VIEWS[name].name, state.plant?.name, "Meterwright"].filter(Boolean).join(" · ");
-  if (isNew) byId(`view-${name}`).querySelector("h1").focus({ preventScroll: true });
-  VIEWS[name].view.show();
+  const heading = byId(`view-${name}`).querySelector("h1");
+  document.title = [heading.textContent, state.plant?.name, "Meterwright"].filter(Boolean).join(" · ");
+  if (isNew) heading.focus({ preventScroll: true });
+  VIEWS[name].show();
 }
 
 function drawViews(current) {
-  fill(byId("views"), Object.entries(VIEWS).map(([key, { name }]) => el("li", {},
-    el("a", { href: link(key), "aria-current": key === current ? "page" : null }, name))));
+  for (const item of byId("views").querySelectorAll("a")) {
+    item.href = link(item.dataset.view);
+    if (item.dataset.view === current) item.setAttribute("aria-current", "page");
+    else item.removeAttribute("aria-current");
+  }
 }
 
 function drawPlants() {

@@ -3,7 +3,7 @@
 const ROOT = "/api/v1";
 
 /** Why a request was not done, in the service's words or ours. */
-export class Problem extends Error {
+class Problem extends Error {
   /** @param {{title?: string, detail?: string, status?: number, faults?: Array, existing?: string}} told */
   constructor(told) {
     super(told.detail || told.title || "The service gave no reason.");

@@ -10,6 +10,9 @@ import { dataTable, linkButton, none, repeatCell } from "./table.js";
 import { stretch } from "./time.js";
 import { count, globalTest, listed } from "./words.js";
 
+/** Order and filter of each table go from one balance to the next, so that periods can be compared. */
+const memories = { sheet: {}, indicators: {}, quantities: {}, givens: {} };
+
 /** Fills `place` with a balance. */
 export function showBalance(place, balance, zone) {
   const title = el("h2", { class: "balance-title" }, stretch(balance.from, balance.to, zone));
@@ -25,7 +28,8 @@ export function showBalance(place, balance, zone) {
     return;
   }
   const tags = sheetTable(sheetRows(balance.tags, (tag) => tag.tag), {
-    id: "sheet", label: "Tags, the worst first", noun: "tag", heading: "Tag", read: "Read", hasTrend: true });
+    id: "sheet", memory: memories.sheet, label: "Tags, the worst first", noun: "tag", heading: "Tag", read: "Read",
+    hasTrend: true });
   const sections = [
     section("Findings", el("div", { id: "findings" },
       el("p", { id: "global-test" }, globalTest(balance)),
@@ -56,22 +60,21 @@ function jumps(sections) {
 }
 
 function warnings(balance) {
-  return balance.warnings.length > 0 && el("ul", { class: "warnings" }, balance.warnings.map((text) => el("li", {}, text)));
+  return balance.warnings.length > 0 && el("ul", {}, balance.warnings.map((text) => el("li", {}, text)));
 }
 
 function givens(balance) {
   if (!balance.givens.length) return null;
   return sheetTable(sheetRows(balance.givens, (given) => given.given), {
-    id: "givens", label: "Soft givens, the worst first", noun: "soft given", heading: "Given", read: "Stated",
-    hasTrend: false }).node;
+    id: "givens", memory: memories.givens, label: "Soft givens, the worst first", noun: "soft given", heading: "Given",
+    read: "Stated", hasTrend: false }).node;
 }
 
 /** A value with its uncertainty and unit, or that it can't be known. */
-export function value({ value: number, sigma, unit }) {
+function value({ value: number, sigma, unit }) {
   if (number === null) return none("can't be known from these meters");
-  const width = sigma > 0 ? ["± ", el("span", { class: "n" }, twoDigits(sigma))] : sigma === 0 ? "exact" : null;
-  return [el("span", { class: "n" }, shown(number, sigma)), " ", el("span", { class: "plus" }, width), " ",
-    el("span", { class: "unit" }, unit)];
+  const width = sigma > 0 ? `± ${twoDigits(sigma)}` : sigma === 0 && "exact";
+  return [shown(number, sigma), " ", el("span", { class: "plus" }, width), " ", el("span", { class: "unit" }, unit)];
 }
 
 const valueColumn = { heading: "Value ± u", hint: "Value and its standard uncertainty", isNumber: true, cell: value,
@@ -83,14 +86,15 @@ const repeatColumn = { heading: "Repeatable to",
   sort: (row) => row.repeat_sigma };
 
 function nameColumn(heading, name) {
-  return { heading, cell: (row) => el("a", { href: link("trend", { series: name(row) }), title: `Trend of ${name(row)}` },
-    name(row)), sort: name };
+  const toTrend = (series) => el("a", { href: link("trend", { series }), title: `Trend of ${series}` }, series);
+  return { heading, cell: (row) => toTrend(name(row)), sort: name };
 }
 
 function indicators(balance) {
   const name = (row) => row.indicator;
   return dataTable({
-    id: "indicators", label: "Indicators", noun: "indicator", columns: [nameColumn("Indicator", name), valueColumn, repeatColumn],
+    id: "indicators", memory: memories.indicators, label: "Indicators", noun: "indicator",
+    columns: [nameColumn("Indicator", name), valueColumn, repeatColumn],
     rows: balance.indicators, key: name, search: name,
   }).node;
 }
@@ -118,7 +122,7 @@ function quantities(balance) {
   return el("div", {},
     unknown > 0 && el("p", {}, `${count(unknown, "quantity", "quantities")} can't be known from these meters.`),
     dataTable({
-      id: "quantities", label: "What really flowed: balanced quantities", noun: "value",
+      id: "quantities", memory: memories.quantities, label: "What really flowed: balanced quantities", noun: "value",
       columns: [nameColumn("Quantity", name), valueColumn, repeatColumn,
         { heading: "How it is known", cell: how, sort: how }],
       rows: balance.quantities, key: name, search: (row) => `${row.quantity} ${how(row)}`,

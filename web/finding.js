@@ -22,7 +22,7 @@ function item(finding, linkTags) {
     el("p", { class: "hint" },
       `Probability ${probability(finding.probability)}. `,
       others.length
-        ? ["These readings can't tell it from an error of ", linkTags(listed(others, "or")), "."]
+        ? ["As possible by these readings: an error of ", linkTags(listed(others, "or")), "."]
         : "Nothing else explains these readings nearly as well."));
 }
 

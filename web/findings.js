@@ -38,7 +38,8 @@ function groups(findings) {
   const byPlace = new Map();
   for (const finding of findings) {
     const key = `${finding.kind} ${finding.at}`;
-    byPlace.set(key, [...(byPlace.get(key) || []), finding]);
+    if (!byPlace.has(key)) byPlace.set(key, []);
+    byPlace.get(key).push(finding);
   }
   return [...byPlace.values()];
 }

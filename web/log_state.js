@@ -37,7 +37,8 @@ export function logStateNode(log) {
   }
 
   update(log);
-  return { node: el("div", { class: "log-state" }, el("div", { class: "log-line" }, words, bar, actions), more, trouble), update };
+  const line = el("div", { class: "log-line" }, words, bar, actions);
+  return { node: el("div", { class: "log-state" }, line, more, trouble), update };
 }
 
 function actionsOf(log, trouble) {
@@ -55,10 +56,13 @@ function actionsOf(log, trouble) {
   const show = log.balance_count > 0 && el("a", { href: link("shift", { log: log.id }) }, "Show the balances");
   switch (log.state) {
     case "waiting":
-    case "working": return button("Cancel", does(api.cancelLog, "Cancelling …"), { "aria-label": `Cancel the work on ${log.name}` });
+    case "working":
+      return button("Cancel", does(api.cancelLog, "Cancelling …"), { "aria-label": `Cancel the work on ${log.name}` });
     case "failed":
     case "cancelled":
-      return [button("Begin again", does(api.restartLog, "Beginning …"), { "aria-label": `Begin again with ${log.name}` }), show];
+      return [
+        button("Begin again", does(api.restartLog, "Beginning …"), { "aria-label": `Begin again with ${log.name}` }),
+        show];
     default: return show;
   }
 }
@@ -68,6 +72,6 @@ function details(log) {
     log.reason && el("p", { class: log.state === "failed" ? "bad" : null }, log.reason),
     log.faults.length > 0 && faultList(log.faults),
     log.state === "failed" && el("p", {}, REMEDY),
-    log.notes.length > 0 && el("ul", { class: "notes" }, log.notes.map((note) => el("li", {}, note))),
+    log.notes.length > 0 && el("ul", {}, log.notes.map((note) => el("li", {}, note))),
   ];
 }

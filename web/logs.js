@@ -37,7 +37,7 @@ function draw() {
 
 function row(log, zone) {
   const shown = logStateNode(log);
-  const covers = el("td");
+  const covers = el("td", { "data-label": "Covers" });
   const update = (log) => {
     covers.textContent = log.from === null ? "" : stretch(log.from, log.to, zone);
     shown.update(log);
@@ -46,8 +46,8 @@ function row(log, zone) {
   return {
     node: el("tr", { "data-key": log.id },
       el("th", { scope: "row" }, log.name, el("span", { class: "description" }, PERIODS[log.periods])),
-      el("td", {}, stamp(log.uploaded_at, zone)), covers, el("td", { class: "number" }, bytes(log.size)),
-      el("td", {}, shown.node)),
+      el("td", { "data-label": "Uploaded" }, stamp(log.uploaded_at, zone)), covers,
+      el("td", { class: "number" }, bytes(log.size)), el("td", {}, shown.node)),
     update,
   };
 }

@@ -1,21 +1,25 @@
 /**
  * Meterwright's page. It knows the service only by its HTTP interface, and shows what the address after `#` says.
  *
- * From the ground up; no module imports one further down this list, but for the words and parts beside it:
+ * From the ground up; no module imports one of a later group:
  *
- *   dom.js          elements made in script, everything as text     words.js       pieces of sentences
- *   number.js       digits and units                                time.js        the plant's clock
+ *   dom.js          elements made in script, everything as text
+ *   number.js       digits and units                                words.js       pieces of sentences
+ *   time.js         the plant's clock                               route.js       the address after `#`
  *   api.js          the service's paths and problems                events.js      what it tells unasked
- *   route.js        the address after `#`                           state.js       plants, the chosen one, its logs
  *   problem.js      problems and faults in words                    table.js       the sortable, filtered table
+ *   state.js        plants, the chosen one, its logs
  *
- *   log_state.js    how one log stands                              progress.js    the strip under the drop zone
- *   plant_text.js   the field for a plant file                      upload.js      drop, button, queue
+ *   log_state.js    how one log stands                              progress.js    uploads and work under way
+ *   plant_text.js   the field for a plant file                      finding.js     findings as sentences
  *   sheet_model.js  the sheet as data                               sheet.js       the sheet as a table
- *   finding.js      findings as sentences                           balance.js     one balance
+ *   balance.js      one balance
  *   trend_data.js   a trend as columns and words                    trend_plot.js  a trend as a plot
+ *   trend_page.js   a trend with all that is said of it
  *
- *   shift.js, logs.js, trend.js, findings.js, plant.js              one view each: `start` once, `show` at every visit
+ *   shift.js, logs.js, trend.js, findings.js, plant.js              one view each: `show` at every visit
+ *
+ *   upload.js       logs that are dropped or chosen, one after another; plant files go to plant.js
  */
 
 import { byId, el, fill, goTo } from "./dom.js";
@@ -32,6 +36,9 @@ import * as upload from "./upload.js";
 
 const VIEWS = { shift, logs, trend, findings, plant };
 
+/** Where the browser keeps the plant that was chosen last, for an address that names none. */
+const LAST_PLANT = "last plant";
+
 /** View that is seen now. */
 let seen = null;
 
@@ -46,8 +53,9 @@ function follow() {
     } else {
       fill(byId("trouble"));
     }
-    const plant = known || state.plants[0];
+    const plant = known || state.plants.find((plant) => plant.id === localStorage.getItem(LAST_PLANT)) || state.plants[0];
     if (plant?.id !== wanted.plant) settle(plant ? { plant: plant.id } : { plant: null });
+    if (plant) localStorage.setItem(LAST_PLANT, plant.id);
     await choosePlant(plant?.id);
     display();
   });
@@ -63,7 +71,10 @@ function display() {
   for (const key of Object.keys(VIEWS)) byId(`view-${key}`).hidden = key !== name;
   const heading = byId(`view-${name}`).querySelector("h1");
   document.title = [heading.textContent, state.plant?.name, "Meterwright"].filter(Boolean).join(" · ");
-  if (isNew) heading.focus({ preventScroll: true });
+  if (isNew) {
+    scrollTo(0, 0);
+    heading.focus({ preventScroll: true });
+  }
   VIEWS[name].show();
 }
 

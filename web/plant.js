@@ -116,7 +116,7 @@ async function loadRevision() {
     }), { class: "link" }),
     `, valid from ${since(entry, plant.time_zone)}, stored ${stamp(entry.created_at, plant.time_zone)}`);
   fill(revisionList, el("p", { class: "hint" }, "A revision never changes. Press one to put its text below."),
-    el("ul", { class: "revisions" }, [...revisions].reverse().map(one)));
+    el("ul", {}, [...revisions].reverse().map(one)));
 }
 
 function since(entry, zone) {

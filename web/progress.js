@@ -67,7 +67,8 @@ function entryNode(name, onGone, ...content) {
 export function addUpload(file, onStop) {
   const bar = el("progress", { "aria-label": `Upload of ${file.name}`, max: 1, value: 0 });
   const words = el("span", { class: "state" }, "waiting to be sent");
-  const line = el("div", { class: "log-line" }, words, bar, button("Stop", onStop, { "aria-label": `Stop the upload of ${file.name}` }));
+  const line = el("div", { class: "log-line" }, words, bar,
+    button("Stop", onStop, { "aria-label": `Stop the upload of ${file.name}` }));
   const content = el("div", { class: "log-state" }, line);
   const node = entryNode(file.name, onStop, content);
   byId("progress").prepend(node);

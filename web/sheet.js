@@ -12,7 +12,6 @@ const UNTESTED = "untested";
  * @param {{id: string, label: string, noun: string, heading: string, read: string, hasTrend: boolean}} words
  */
 export function sheetTable(rows, words) {
-  const plus = (row) => ["± ", el("span", { class: "n" }, row.uncertainty)];
   const columns = [
     {
       heading: words.heading,
@@ -30,7 +29,7 @@ export function sheetTable(rows, words) {
       hint: "Balanced value and its standard uncertainty, with the findings accounted for",
       isNumber: true,
       cell: (row) => (row.balanced === null ? none("can't be known from these meters")
-        : [el("span", { class: "n" }, row.balanced), " ", row.uncertainty && el("span", { class: "plus" }, plus(row)), " ",
+        : [row.balanced, " ", row.uncertainty && el("span", { class: "plus" }, `± ${row.uncertainty}`), " ",
           el("span", { class: "unit" }, row.unit)]),
       sort: (row) => row.numbers.balanced,
     },

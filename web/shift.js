@@ -19,7 +19,11 @@ export function start() {
   byId("period-before").addEventListener("click", () => step(-1));
   byId("period-after").addEventListener("click", () => step(1));
   on("logs", listLogs);
-  on("log", listLogs);
+  on("log", (log) => {
+    listLogs();
+    const concerns = listed.log === null || listed.log === log.id;
+    if (log.state === "done" && concerns && !byId("view-shift").hidden) show();
+  });
 }
 
 /** Shows what the address asks for. */
@@ -65,7 +69,10 @@ function empty() {
 function listLogs() {
   const known = state.logs.filter((log) => log.balance_count > 0 || log.state === "done");
   const select = byId("shift-log");
-  fill(select, known.map((log) => el("option", { value: log.id }, log.name)));
+  const isListed = known.length === select.options.length &&
+    known.every((log, place) => select.options[place].value === log.id);
+  // A selection that is filled anew closes under its user's finger.
+  if (!isListed) fill(select, known.map((log) => el("option", { value: log.id }, log.name)));
   if (listed.log) select.value = listed.log;
   select.disabled = known.length === 0;
 }
@@ -102,7 +109,7 @@ function rejected(periods, zone) {
   const one = (period) => el("li", {}, el("strong", {}, stretch(period.from, period.to, zone)), `: ${period.rejected}`);
   return el("details", {},
     el("summary", {}, `${count(periods.length, "stretch", "stretches")} of this log could not be balanced`),
-    el("ul", { class: "rejected" }, periods.map(one)));
+    el("ul", {}, periods.map(one)));
 }
 
 function step(by) {

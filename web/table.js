@@ -16,13 +16,15 @@ import { count } from "./words.js";
 
 /**
  * @param {{id?: string, label: string, noun: string, columns: Column[], rows: Object[], key: (row) => string,
- *   rowClass?: (row) => string, search?: (row) => string, sort?: {column: number, order: string}}} options `rows` in
- *   the order shown first, which `sort` names; `search` is the text that the filter looks in
+ *   rowClass?: (row) => string, search?: (row) => string, sort?: {column: number, order: string},
+ *   memory?: Object}} options `rows` in the order shown first, which `sort` names; `search` is the text that the filter
+ *   looks in; what its user chose is kept in `memory` for the next table of the kind
  */
 export function dataTable(options) {
   const { columns, key } = options;
-  let sort = options.sort || null;
-  let wanted = "";
+  const memory = options.memory || {};
+  let sort = memory.sort || options.sort || null;
+  let wanted = memory.wanted || "";
   const body = el("tbody");
   const shownCount = el("span", { class: "hint", role: "status" });
   const lines = new Map(options.rows.map((row) => [key(row), line(row, options)]));
@@ -34,7 +36,7 @@ export function dataTable(options) {
   function sortBy(place) {
     const first = columns[place].first || "ascending";
     const other = first === "ascending" ? "descending" : "ascending";
-    sort = { column: place, order: sort?.column === place && sort.order === first ? other : first };
+    sort = memory.sort = { column: place, order: sort?.column === place && sort.order === first ? other : first };
     draw();
   }
 
@@ -51,9 +53,9 @@ export function dataTable(options) {
   }
 
   const filter = options.search && el("input", {
-    type: "search", autocomplete: "off",
+    type: "search", autocomplete: "off", value: wanted,
     oninput: (event) => {
-      wanted = event.target.value.trim().toLowerCase();
+      wanted = memory.wanted = event.target.value.trim().toLowerCase();
       draw();
     },
   });
@@ -70,7 +72,7 @@ export function dataTable(options) {
       const row = lines.get(name);
       if (!row) return false;
       if (!row.isConnected) {
-        filter.value = wanted = "";
+        filter.value = wanted = memory.wanted = "";
         draw();
       }
       goTo(row);
@@ -97,7 +99,7 @@ function comparison(value, order) {
 
 /** A number and its unit, the unit set apart so that numbers stand beneath one another. */
 export function measure(number, unit) {
-  return [el("span", { class: "n" }, number), " ", el("span", { class: "unit" }, unit)];
+  return [number, " ", el("span", { class: "unit" }, unit)];
 }
 
 /** A repeatability; one that is nothing beside the whole uncertainty has no digits worth reading. */

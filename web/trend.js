@@ -42,7 +42,10 @@ export function show() {
       listSeries();
     }
     if (!known.series.length) {
-      fill(byId("trend"), el("p", {}, "There is no trend yet: it is made of the balances of logs. Drop one on this page."));
+      fill(byId("trend-title"), "No trend yet");
+      fill(byId("slope"));
+      fill(byId("trend"), el("p", {}, "A trend is made of the balances of logs. Drop one on this page."));
+      fill(byId("trend-notes"));
       return;
     }
     if (!route().series) settle({ series: known.series[0].series });

@@ -7,8 +7,8 @@ import { count } from "./words.js";
 /**
  * Columns for the plot. Between the values on the two sides of a break stands a row without any, so that no line is
  * drawn through it.
- * @returns {{columns: Array[], points: (number|null)[], breaks: {time: number, at: number, number: number, causes: string[]}[]}}
- *   `columns`: times (ms), lower and upper edge of the band, value, reading; `points`: for each row the index into the
+ * @returns {{columns: Array[], points: (number|null)[],
+ *   breaks: {time: number, at: number, number: number, causes: string[]}[]}} `columns`: times (ms), lower and upper edge of the band, value, reading; `points`: for each row the index into the
  *   trend, or null at a break
  */
 export function plotData(trend) {
@@ -41,7 +41,9 @@ export function pointWords(trend, index, zone) {
   const parts = [`${stretch(trend.from[index], trend.to[index], zone)}: ` +
     estimate(trend.value[index], trend.sigma[index], unit)];
   const repeat = trend.repeat_sigma[index];
-  if (repeat !== null && !isNegligible(repeat, trend.sigma[index])) parts.push(`repeatable to ± ${twoDigits(repeat)} ${differenceUnit(unit)}`);
+  if (repeat !== null && !isNegligible(repeat, trend.sigma[index])) {
+    parts.push(`repeatable to ± ${twoDigits(repeat)} ${differenceUnit(unit)}`);
+  }
   const read = trend.measured?.[index];
   if (trend.measured) parts.push(read === null ? "no reading" : `read ${shown(read, trend.sigma[index])} ${unit}`);
   return parts.join("; ");

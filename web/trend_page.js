@@ -7,6 +7,9 @@ import { stamp, stretch } from "./time.js";
 import { plotData, pointWords, slopeWords, summaryWords } from "./trend_data.js";
 import { plot } from "./trend_plot.js";
 
+/** So many rows of the table are made: more would take seconds. */
+const MOST_ROWS = 1000;
+
 /** The plot that is on the page. */
 let shownPlot = null;
 
@@ -27,10 +30,11 @@ export function showTrend(trend, description, zone, { onZoom }) {
     fill(byId("trend-notes"));
     return;
   }
-  const words = (row) => (points[row] === null
-    ? `Break ${breaks.find((change) => change.time === columns[0][row]).number}: ` +
-      breaks.find((change) => change.time === columns[0][row]).causes.join("; ")
-    : pointWords(trend, points[row], zone));
+  const breakWords = (time) => {
+    const { number, causes } = breaks.find((change) => change.time === time);
+    return `Break ${number}: ${causes.join("; ")}`;
+  };
+  const words = (row) => (points[row] === null ? breakWords(columns[0][row]) : pointWords(trend, points[row], zone));
   const readout = el("p", { class: "readout" });
   const hint = "Point at the plot, or move the slider, to read out a value. Drag across the plot to look closer.";
   const read = (row) => {
@@ -49,7 +53,8 @@ export function showTrend(trend, description, zone, { onZoom }) {
   });
   const box = el("div", { role: "img", "aria-label": `Plot of ${trend.series}. ${summaryWords(trend, zone)}` });
   fill(byId("trend"), legend(trend), box, slider, readout);
-  shownPlot = plot(box, { columns, breaks, unit: trend.unit, hasReadings: Boolean(trend.measured), zone }, { onRow: read, onZoom });
+  const data = { columns, breaks, unit: trend.unit, hasReadings: Boolean(trend.measured), zone };
+  shownPlot = plot(box, data, { onRow: read, onZoom });
   fill(byId("trend-notes"), breakList(breaks, zone), el("h3", {}, "In figures"),
     el("p", { id: "trend-summary" }, summaryWords(trend, zone)), table(trend, zone));
 }
@@ -71,7 +76,7 @@ function breakList(breaks, zone) {
   return el("div", {},
     el("h3", {}, "Breaks"),
     el("p", { class: "hint" }, "No line is drawn through a break: values on its two sides rest on different things."),
-    el("ol", { class: "breaks" }, breaks.map((change) =>
+    el("ol", {}, breaks.map((change) =>
       el("li", {}, `from ${stamp(change.at, zone)}: ${change.causes.join("; ")}`))));
 }
 
@@ -87,16 +92,21 @@ function tableOf(trend, zone) {
     ? measure(`± ${twoDigits(trend.sigma[index])}`, differenceUnit(trend.unit)) : none(""));
   const column = (of) => ({
     isNumber: true,
-    cell: (index) => (of[index] === null ? none("can't be known") : measure(shown(of[index], trend.sigma[index]), trend.unit)),
+    cell: (index) => (of[index] === null
+      ? none("can't be known") : measure(shown(of[index], trend.sigma[index]), trend.unit)),
     sort: (index) => of[index],
   });
-  return dataTable({
+  const rows = trend.from.map((_, index) => index).slice(-MOST_ROWS);
+  const told = rows.length < trend.from.length && el("p", { class: "hint" },
+    `The last ${MOST_ROWS} of ${trend.from.length} values. Choose a shorter stretch of time to see others.`);
+  const { node } = dataTable({
     label: `Values of ${trend.series}`,
     noun: "value",
-    rows: trend.from.map((_, index) => index),
+    rows,
     key: String,
     columns: [
-      { heading: "Period", cell: (index) => stretch(trend.from[index], trend.to[index], zone), sort: (index) => trend.from[index] },
+      { heading: "Period", cell: (index) => stretch(trend.from[index], trend.to[index], zone),
+        sort: (index) => trend.from[index] },
       { heading: "Value", ...column(trend.value) },
       { heading: "u", hint: "Standard uncertainty", isNumber: true, cell: uncertainty, sort: (index) => trend.sigma[index] },
       { heading: "Repeatable to", isNumber: true, sort: (index) => trend.repeat_sigma[index],
@@ -104,5 +114,6 @@ function tableOf(trend, zone) {
       trend.measured && { heading: "Read", ...column(trend.measured) },
     ].filter(Boolean),
     sort: { column: 0, order: "ascending" },
-  }).node;
+  });
+  return el("div", {}, told, node);
 }

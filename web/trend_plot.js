@@ -2,7 +2,7 @@
 
 import uPlot from "./vendor/uplot/uPlot.esm.js";
 import { el } from "./dom.js";
-import { shown } from "./number.js";
+import { written } from "./number.js";
 import { day, stamp } from "./time.js";
 
 const HEIGHT = 380;
@@ -53,7 +53,8 @@ function options({ breaks, unit, hasReadings, zone }, { onRow, onZoom }, width) 
   const style = getComputedStyle(document.documentElement);
   const colour = (name) => style.getPropertyValue(`--${name}`).trim();
   const font = `12px ${style.fontFamily}`;
-  const axis = { stroke: colour("muted"), font, grid: { stroke: colour("rule"), width: 1 }, ticks: { stroke: colour("rule"), width: 1 } };
+  const rule = { stroke: colour("rule"), width: 1 };
+  const axis = { stroke: colour("muted"), font, grid: rule, ticks: rule };
   const edge = { scale: "y", stroke: "transparent", width: 0, points: { show: false } };
   const reading = { stroke: colour("reading"), width: 0, paths: () => null, show: hasReadings,
     points: { show: true, size: 5, stroke: colour("reading"), fill: colour("paper") } };
@@ -70,7 +71,8 @@ function options({ breaks, unit, hasReadings, zone }, { onRow, onZoom }, width) 
     bands: [{ series: [2, 1], fill: colour("band") }],
     axes: [
       { ...axis, space: 80, values: (chart, times, place, space, step) => timeLabels(times, step, zone) },
-      { ...axis, size: 76, label: unit, labelFont: font, labelSize: 20, values: (chart, values) => values.map((value) => shown(value, null)) },
+      { ...axis, size: 76, label: unit, labelFont: font, labelSize: 20,
+        values: (chart, values, place, space, step) => numberLabels(values, step) },
     ],
     cursor: { drag: { x: true, y: false, setScale: false }, y: false, points: { size: 9 } },
     hooks: {
@@ -79,7 +81,10 @@ function options({ breaks, unit, hasReadings, zone }, { onRow, onZoom }, width) 
         const { left, width } = chart.select;
         if (width > 0) onZoom(chart.posToVal(left, "x"), chart.posToVal(left + width, "x"));
       }],
-      draw: [(chart) => drawBreaks(chart, breaks, colour("break"), style.fontFamily)],
+      draw: [(chart) => {
+        drawLoneBands(chart, colour("line"));
+        drawBreaks(chart, breaks, colour("break"), style.fontFamily);
+      }],
     },
   };
 }
@@ -95,6 +100,33 @@ function timeLabels(times, step, zone) {
     told = date;
     return label;
   });
+}
+
+/** Numbers with as many decimals as their steps need. */
+function numberLabels(values, step) {
+  const places = (String(Number(step.toPrecision(6))).split(".")[1] || "").length;
+  return values.map((value) => written(value, places));
+}
+
+/** A point between two breaks has no neighbour to draw a band to: a bar shows its band. */
+function drawLoneBands(chart, colour) {
+  const { ctx, bbox, data: [times, lows, highs] } = chart;
+  const known = (row) => lows[row] !== null && lows[row] !== undefined;
+  ctx.save();
+  ctx.beginPath();
+  ctx.rect(bbox.left, bbox.top, bbox.width, bbox.height);
+  ctx.clip();
+  ctx.strokeStyle = colour;
+  ctx.lineWidth = devicePixelRatio;
+  ctx.beginPath();
+  times.forEach((time, row) => {
+    if (!known(row) || known(row - 1) || known(row + 1)) return;
+    const x = chart.valToPos(time, "x", true);
+    ctx.moveTo(x, chart.valToPos(lows[row], "y", true));
+    ctx.lineTo(x, chart.valToPos(highs[row], "y", true));
+  });
+  ctx.stroke();
+  ctx.restore();
 }
 
 /** A dashed line at each break, with the number under which the list beneath explains it. */

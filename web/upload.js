@@ -104,5 +104,7 @@ function leadToBalances(log) {
   places.delete(log.id);
   const view = route().view || "shift";
   const isWaiting = place === location.hash && (view === "shift" || view === "logs");
-  if (isWaiting && log.balance_count > 0) go("shift", { log: log.id });
+  if (!isWaiting || log.balance_count === 0) return;
+  go("shift", { log: log.id });
+  scrollTo(0, 0);
 }

@@ -4,16 +4,23 @@ import { COVERAGE, decimals, differenceUnit, estimate, isNegligible, shown, twoD
 import { stretch } from "./time.js";
 import { count } from "./words.js";
 
+/** Where there is no balance for so many times as long as usual, and for days, no line says what was in between. */
+const LONG_GAP = 10;
+/** Nights and weekends are no gap, ms. */
+const SHORT_GAP = 3 * 86400000;
+
 /**
- * Columns for the plot. Between the values on the two sides of a break stands a row without any, so that no line is
- * drawn through it.
+ * Columns for the plot. Between the values on the two sides of a break or a long gap stands a row without any, so that
+ * no line is drawn through it.
  * @returns {{columns: Array[], points: (number|null)[],
  *   breaks: {time: number, at: number, number: number, causes: string[]}[]}} `columns`: times (ms), lower and upper edge of the band, value, reading; `points`: for each row the index into the
- *   trend, or null at a break
+ *   trend, or null at a break or gap
  */
 export function plotData(trend) {
   const middle = (index) => (trend.from[index] + trend.to[index]) / 2;
   const causes = new Map(trend.breaks.map((change) => [change.at, change.causes]));
+  const steps = trend.from.slice(1).map((_, index) => middle(index + 1) - middle(index)).sort((a, b) => a - b);
+  const longest = Math.max(LONG_GAP * steps[Math.floor(steps.length / 2)], SHORT_GAP);
   const columns = [[], [], [], [], []];
   const points = [];
   const breaks = [];
@@ -23,9 +30,9 @@ export function plotData(trend) {
   };
   trend.value.forEach((value, index) => {
     const change = index > 0 && causes.get(trend.from[index]);
-    if (change) {
+    if (change || (index > 0 && middle(index) - middle(index - 1) > longest)) {
       const time = (middle(index - 1) + middle(index)) / 2;
-      breaks.push({ time, at: trend.from[index], number: breaks.length + 1, causes: change });
+      if (change) breaks.push({ time, at: trend.from[index], number: breaks.length + 1, causes: change });
       row(null, [time, null, null, null, null]);
     }
     const reach = trend.repeat_sigma[index] === null || value === null ? null : trend.repeat_sigma[index] * COVERAGE;

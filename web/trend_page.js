@@ -6,9 +6,13 @@ import { dataTable, measure, none, repeatCell } from "./table.js";
 import { stamp, stretch } from "./time.js";
 import { plotData, pointWords, slopeWords, summaryWords } from "./trend_data.js";
 import { plot } from "./trend_plot.js";
+import { count } from "./words.js";
 
 /** So many rows of the table are made: more would take seconds. */
 const MOST_ROWS = 1000;
+
+/** More breaks than these are listed when asked for. */
+const FEW_BREAKS = 12;
 
 /** The plot that is on the page. */
 let shownPlot = null;
@@ -31,8 +35,8 @@ export function showTrend(trend, description, zone, { onZoom }) {
     return;
   }
   const breakWords = (time) => {
-    const { number, causes } = breaks.find((change) => change.time === time);
-    return `Break ${number}: ${causes.join("; ")}`;
+    const found = breaks.find((change) => change.time === time);
+    return found ? `Break ${found.number}: ${found.causes.join("; ")}` : "No balance for a long while";
   };
   const words = (row) => (points[row] === null ? breakWords(columns[0][row]) : pointWords(trend, points[row], zone));
   const readout = el("p", { class: "readout" });
@@ -76,8 +80,10 @@ function breakList(breaks, zone) {
   return el("div", {},
     el("h3", {}, "Breaks"),
     el("p", { class: "hint" }, "No line is drawn through a break: values on its two sides rest on different things."),
-    el("ol", {}, breaks.map((change) =>
-      el("li", {}, `from ${stamp(change.at, zone)}: ${change.causes.join("; ")}`))));
+    el("details", { open: breaks.length <= FEW_BREAKS },
+      el("summary", {}, count(breaks.length, "break")),
+      el("ol", {}, breaks.map((change) =>
+        el("li", {}, `from ${stamp(change.at, zone)}: ${change.causes.join("; ")}`)))));
 }
 
 /** The plotted data as a table, made when it is opened. */

@@ -66,7 +66,9 @@ function options({ breaks, unit, hasReadings, zone }, { onRow, onZoom }, width) 
     legend: { show: false },
     scales: { x: { time: true }, y: { auto: true } },
     series: [{}, edge, edge,
-      { stroke: colour("line"), width: 2, points: { show: true, size: 4, stroke: colour("line"), fill: colour("line") } },
+      { stroke: colour("line"), width: 2, points: { size: 4, stroke: colour("line"), fill: colour("line"),
+        // Where points are too dense to be drawn, those without a line still are.
+        filter: (chart, series, isShown) => (isShown ? null : loneRows(chart.data[series])) } },
       reading],
     bands: [{ series: [2, 1], fill: colour("band") }],
     axes: [
@@ -108,10 +110,15 @@ function numberLabels(values, step) {
   return values.map((value) => written(value, places));
 }
 
+/** Rows of a column that have no neighbour. */
+function loneRows(column) {
+  const isKnown = (row) => column[row] !== null && column[row] !== undefined;
+  return [...column.keys()].filter((row) => isKnown(row) && !isKnown(row - 1) && !isKnown(row + 1));
+}
+
 /** A point between two breaks has no neighbour to draw a band to: a bar shows its band. */
 function drawLoneBands(chart, colour) {
   const { ctx, bbox, data: [times, lows, highs] } = chart;
-  const known = (row) => lows[row] !== null && lows[row] !== undefined;
   ctx.save();
   ctx.beginPath();
   ctx.rect(bbox.left, bbox.top, bbox.width, bbox.height);
@@ -119,12 +126,11 @@ function drawLoneBands(chart, colour) {
   ctx.strokeStyle = colour;
   ctx.lineWidth = devicePixelRatio;
   ctx.beginPath();
-  times.forEach((time, row) => {
-    if (!known(row) || known(row - 1) || known(row + 1)) return;
-    const x = chart.valToPos(time, "x", true);
+  for (const row of loneRows(lows)) {
+    const x = chart.valToPos(times[row], "x", true);
     ctx.moveTo(x, chart.valToPos(lows[row], "y", true));
     ctx.lineTo(x, chart.valToPos(highs[row], "y", true));
-  });
+  }
   ctx.stroke();
   ctx.restore();
 }

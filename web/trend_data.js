@@ -13,8 +13,8 @@ const SHORT_GAP = 3 * 86400000;
  * Columns for the plot. Between the values on the two sides of a break or a long gap stands a row without any, so that
  * no line is drawn through it.
  * @returns {{columns: Array[], points: (number|null)[],
- *   breaks: {time: number, at: number, number: number, causes: string[]}[]}} `columns`: times (ms), lower and upper edge of the band, value, reading; `points`: for each row the index into the
- *   trend, or null at a break or gap
+ *   breaks: {time: number, at: number, number: number, causes: string[]}[]}} `columns`: times (ms), lower and upper edge
+ *   of the band, value, reading; `points`: for each row the index into the trend, or null at a break or gap
  */
 export function plotData(trend) {
   const middle = (index) => (trend.from[index] + trend.to[index]) / 2;
@@ -65,7 +65,7 @@ export function slopeWords(trend) {
   const places = decimals((high - low) / (2 * COVERAGE), middle);
   const ends = `${written(low, places)} to ${written(high, places)}`;
   const sign = middle > 0 ? "+" : "";
-  const meaning = low > 0 || high < 0 ? "" : " The interval holds zero: no change can be told from none.";
+  const meaning = low > 0 || high < 0 ? "" : " The interval holds zero: a change can't be told from none.";
   return `Slope ${sign}${written(middle, places)} ${unit} per month (${Math.round(level * 100)} % interval ${ends} ` +
     `${unit} per month; ${count(points, "point")}). ${method}.${meaning}`;
 }

@@ -333,7 +333,10 @@ impl CompiledPlant {
                     told.tag(reads, *observed, *samples, shared, residual, judged)
                 }
                 (None, Ok(observed)) => kept(*observed, *samples),
-                _ => told.excluded(reads, *samples),
+                _ => {
+                    let is_known = instrument.reads.is_none_or(|quantity| told.known(quantity).is_some());
+                    told.excluded(reads.filter(|_| is_known), *samples)
+                }
             }
         };
         self.instruments.iter().zip(&observations.tags).zip(places).map(one).collect()

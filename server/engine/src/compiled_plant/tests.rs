@@ -274,3 +274,30 @@ fn rows_have_the_same_value_and_derivatives_by_their_recipes() {
         }
     }
 }
+
+/// What an excluded tag would have read is told where its quantity is, and nowhere else.
+#[test]
+fn an_excluded_tag_has_a_balanced_value_only_where_its_quantity_is_known() {
+    let (compiled, readings, anchor) = case(UNIT);
+    let mut unknown = 0;
+    for draw in 0..20_usize {
+        // Another third is dropped each time.
+        let is_kept = |place: usize| !(place * 7 + draw * draw * 3).is_multiple_of(3) && place % 20 != draw;
+        let kept: Vec<Option<Reading>> =
+            readings.iter().enumerate().map(|(place, reading)| reading.filter(|_| is_kept(place))).collect();
+        let balance = compiled.balance(&kept, Some(&anchor));
+        for (label, tag) in
+            compiled.tags().iter().zip(&balance.tags).filter(|(_, tag)| tag.measured.is_none())
+        {
+            let reads = |quantity: &&crate::balance::Label| Some(&quantity.name) == label.quantity.as_ref();
+            let Some(place) = compiled.quantities().iter().position(|quantity| reads(&quantity)) else {
+                continue;
+            };
+            // A gauge pressure is as unknown as the absolute one, but for the surroundings' own uncertainty.
+            let is_known = balance.quantities[place].value.is_some();
+            assert_eq!(tag.reconciled.is_some(), is_known, "draw {draw}: {}", label.name);
+            unknown += usize::from(!is_known);
+        }
+    }
+    assert!(unknown > 5, "{unknown} excluded tags were of something unknown");
+}

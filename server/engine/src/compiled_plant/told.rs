@@ -77,11 +77,11 @@ impl Told<'_> {
 
     /// A tag that takes no part; what it would have read is told where it is known.
     pub(super) fn excluded(&self, reads: Option<(u32, f64)>, samples: u32) -> TagBalance {
-        let known = reads.filter(|(base, _)| !self.solution.linearisation.touched()[*base as usize]);
+        let known = reads.and_then(|(base, shift)| Some((self.known(base)?, shift)));
         TagBalance {
             samples,
-            reconciled: known.map(|(base, shift)| self.solution.x[base as usize] - shift),
-            reconciled_sigma: known.map(|(base, _)| self.variances.sigma(base)),
+            reconciled: known.map(|((value, _), shift)| value - shift),
+            reconciled_sigma: known.map(|((_, sigma), _)| sigma),
             ..NOTHING
         }
     }

@@ -79,6 +79,7 @@ const FLOORS: &[&[&str]] = &[
     &["balance"],
     &["compile", "estimate"],
     &["verdict", "search"],
+    &["method"],
     &["compiled_plant"],
 ];
 
@@ -239,6 +240,13 @@ fn the_readme_names_every_kind_option_and_function() {
                 "README.md lacks the option {option} of {command}"
             );
         }
+    }
+    for method in meterwright_engine::METHODS {
+        assert!(
+            readme.contains(&format!("`{}`", method.name)),
+            "README.md lacks the method `{}`",
+            method.name
+        );
     }
     let functions = fs::read_to_string(root().join("server/engine/src/formula/function.rs")).unwrap();
     let names: Vec<&str> =

@@ -227,6 +227,26 @@ fn pairs() -> String {
 }
 
 #[test]
+fn a_published_method_names_errors_without_probabilities() {
+    let by = |name: &str, more: &[&str]| {
+        reconcile(&pairs(), PAIRS, &[&["--periods", "row", "--method", name], more].concat())
+    };
+    let (status, output, _) = by("serial_elimination", &["--json"]);
+    assert_eq!(status, 0);
+    let result: Value = serde_json::from_str(&output).unwrap();
+    let findings = result["balances"][0]["findings"].as_array().unwrap();
+    assert_eq!(findings.len(), 2, "{findings:?}");
+    assert!(findings.iter().all(|finding| finding["probability"].is_null()), "{findings:?}");
+    let (_, output, _) = by("serial_elimination", &[]);
+    assert!(output.contains("FT-1 reads 12.1 t/h high (± 1.2 t/h). It reads"), "{output}");
+    // The search is a method among them.
+    assert_eq!(by("search", &["--json"]).1, reconcile(&pairs(), PAIRS, &["--periods", "row", "--json"]).1);
+    let (status, _, errors) = by("serial_ellimination", &[]);
+    assert!(status == 2 && errors.contains("serial_elimination"), "{errors}");
+    assert_eq!(by("fair", &["--no-search"]).0, 2);
+}
+
+#[test]
 fn findings_are_told_with_their_size_as_a_difference() {
     let (status, output, errors) = reconcile(&pairs(), PAIRS, &["--periods", "row", "--json"]);
     assert_eq!((status, errors.as_str()), (0, ""));

@@ -132,8 +132,8 @@ pub struct Finding {
     pub estimate: f64,
     /// Its standard uncertainty.
     pub sigma: f64,
-    /// Probability that this hypothesis is true.
-    pub probability: f64,
+    /// Probability that this hypothesis is true; absent where a method that knows of none names it.
+    pub probability: Option<f64>,
     /// Hypotheses that these readings can't tell from it, the most probable first.
     pub alternatives: Vec<Alternative>,
 }
@@ -157,8 +157,8 @@ pub struct Evidence {
 pub struct Alternative {
     /// Which of the plant's hypotheses.
     pub hypothesis: usize,
-    /// Probability that it is true.
-    pub probability: f64,
+    /// Probability that it is true; absent as in its finding.
+    pub probability: Option<f64>,
 }
 
 /// An error that a search looks for.
@@ -172,6 +172,15 @@ pub struct Hypothesis {
     pub name: String,
     /// Unit in which its size is written.
     pub unit: crate::quantity::Unit,
+}
+
+/// What is expected of a hypothesis before anything is read.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Prior {
+    /// Probability that it is true.
+    pub probability: f64,
+    /// Standard deviation of its size, in the SI of the hypothesis's unit.
+    pub size: f64,
 }
 
 /// The global test: weighted sum of squares against the chi-square distribution.

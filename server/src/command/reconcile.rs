@@ -5,8 +5,9 @@ use std::io::{self, BufWriter, IsTerminal, Write};
 use std::path::{Path, PathBuf};
 
 use clap::Args;
+use clap::builder::{PossibleValue, PossibleValuesParser};
 use meterwright_engine::estimate::Anchor;
-use meterwright_engine::{Balance, CompiledPlant, Outcome};
+use meterwright_engine::{Balance, CompiledPlant, Level, METHODS, Method, Outcome};
 
 use super::Status;
 use super::input::{Input, Sources, Stop, log_faults, notes, plant_faults, say};
@@ -32,6 +33,9 @@ pub(super) struct Arguments {
     /// Balance with every tag as it stands and look for no errors
     #[arg(long)]
     no_search: bool,
+    /// Who names errors: the search, or a published method to compare it with
+    #[arg(long, value_name = "NAME", default_value = SEARCH, value_parser = method_names(), conflicts_with = "no_search")]
+    method: String,
     /// Share of error-free balances in which anything is found
     #[arg(long, value_name = "SHARE", default_value_t = 0.05, value_parser = false_alarm_rate)]
     false_alarm_rate: f64,
@@ -47,6 +51,37 @@ pub(super) struct Arguments {
 fn false_alarm_rate(text: &str) -> Result<f64, String> {
     let share = text.parse().ok().filter(|share: &f64| 0.0 < *share && *share < 1.0);
     share.ok_or_else(|| "write a number above 0 and below 1, such as 0.05".to_owned())
+}
+
+/// What the search is called among the methods.
+const SEARCH: &str = "search";
+
+/// The search and the published methods, each with what it does.
+fn method_names() -> PossibleValuesParser {
+    let search = PossibleValue::new(SEARCH).help("posterior over sets of errors");
+    let published = METHODS.iter().map(|method| PossibleValue::new(method.name).help(method.about));
+    std::iter::once(search).chain(published).collect::<Vec<_>>().into()
+}
+
+/// Who names errors, at which level.
+#[derive(Clone, Copy)]
+enum Judge {
+    Nobody,
+    Search(f64),
+    Method(&'static Method, Level),
+}
+
+impl Judge {
+    fn of(arguments: &Arguments) -> Self {
+        let rate = arguments.false_alarm_rate;
+        // Nothing is called like the search.
+        let published = METHODS.iter().find(|method| method.name == arguments.method);
+        match published {
+            _ if arguments.no_search => Self::Nobody,
+            Some(method) => Self::Method(method, Level::FalseAlarmRate(rate)),
+            None => Self::Search(rate),
+        }
+    }
 }
 
 /// How many balances were made and how many of them converged.
@@ -86,7 +121,7 @@ fn reconcile(arguments: &Arguments) -> Result<Tally, Stop> {
         report: &*report(&input, arguments),
         log: &arguments.log,
         rejections: &rejections,
-        false_alarm_rate: (!arguments.no_search).then_some(arguments.false_alarm_rate),
+        judge: Judge::of(arguments),
         is_for_people: !arguments.json,
     };
     run.balance_all(found, notes)
@@ -122,8 +157,7 @@ struct Run<'r> {
     log: &'r Path,
     /// Lines about stretches that are no period.
     rejections: &'r [String],
-    /// Absent where no errors are looked for.
-    false_alarm_rate: Option<f64>,
+    judge: Judge,
     is_for_people: bool,
 }
 
@@ -168,9 +202,11 @@ impl Run<'_> {
     }
 
     fn balance(&self, period: &Period, anchor: Option<&Anchor>) -> Balance {
-        match self.false_alarm_rate {
-            Some(rate) => self.compiled.balance_and_search(&period.readings, anchor, rate),
-            None => self.compiled.balance(&period.readings, anchor),
+        let (compiled, readings) = (self.compiled, &period.readings);
+        match self.judge {
+            Judge::Nobody => compiled.balance(readings, anchor),
+            Judge::Search(rate) => compiled.balance_and_search(readings, anchor, rate),
+            Judge::Method(method, level) => compiled.balance_by_method(readings, anchor, method, level),
         }
     }
 

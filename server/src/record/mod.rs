@@ -95,7 +95,7 @@ struct PackedFinding {
     estimate: f64,
     sigma: f64,
     unit: String,
-    probability: f64,
+    probability: Option<f64>,
     indistinguishable_from: Vec<String>,
     sentence: Option<String>,
 }

@@ -197,8 +197,8 @@ pub struct FindingDocument<'b> {
     pub sigma: f64,
     /// Unit of both.
     pub unit: Cow<'b, str>,
-    /// Probability that it is true.
-    pub probability: f64,
+    /// Probability that it is true; null where a named method found it, which knows none.
+    pub probability: Option<f64>,
     /// What these readings can't tell it from, the most probable first.
     pub indistinguishable_from: Vec<Cow<'b, str>>,
     /// The finding for people; left out by `reconcile --json`.
@@ -365,7 +365,7 @@ impl<'b> FindingDocument<'b> {
             sigma: error.unit.spread_from_si(finding.sigma),
             unit: labels.size_unit(error),
             // A sum of many chances may round to more than one.
-            probability: finding.probability.min(1.0),
+            probability: finding.probability.map(|value| value.min(1.0)),
             indistinguishable_from: alternatives
                 .map(|other| labels.hypotheses[other.hypothesis].name.as_str().into())
                 .collect(),

@@ -35,11 +35,13 @@ fn what(labels: &Labels<'_>, error: &Hypothesis, finding: &Finding) -> String {
     let sigma = error.unit.spread_from_si(finding.sigma);
     let unit = labels.size_unit(error);
     let size = format!("{} {unit}", shown(estimate.abs(), Some(sigma)));
-    let doubt = format!("(± {} {unit}; probability {})", two_digits(sigma), probability(finding.probability));
+    let probable =
+        finding.probability.map_or_else(String::new, |value| format!("; probability {}", probability(value)));
+    let doubt = format!("(± {} {unit}{probable})", two_digits(sigma));
     let at = &error.at;
     let either = |plus: &'static str, minus: &'static str| if estimate >= 0.0 { plus } else { minus };
     // What is less probable than not is told as what may be.
-    let may = finding.probability < 0.5;
+    let may = finding.probability.is_some_and(|value| value < 0.5);
     match error.kind {
         FindingKind::Bias => {
             let reads = if may { "may read" } else { "reads" };
@@ -129,8 +131,9 @@ fn alternatives(labels: &Labels<'_>, alternatives: &[Alternative]) -> String {
             FindingKind::Given => format!("a wrong value given for {at}"),
             FindingKind::Shared => format!("an error common to {}", members(labels, at)),
         };
+        let Some(value) = other.probability else { return what };
         let word = if std::mem::take(&mut first) { "probability " } else { "" };
-        format!("{what} ({word}{})", probability(other.probability))
+        format!("{what} ({word}{})", probability(value))
     };
     let told: Vec<String> = alternatives.iter().map(one).collect();
     match told.as_slice() {

@@ -1,10 +1,13 @@
 //! The door: a plant compiled once, then one balance for each set of readings.
 
+mod account;
 mod check;
+mod method;
 mod search;
 #[cfg(test)]
 mod tests;
 mod told;
+mod weighed;
 
 pub use check::{Assumption, Basis, Check, Meter};
 

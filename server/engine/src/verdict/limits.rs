@@ -24,17 +24,20 @@ impl Limits {
         })
     }
 
-    /// The two-sided limit of each of `tests` normal statistics that holds the family's level if they are independent:
-    /// Z. Šidák, "Rectangular confidence regions for the means of multivariate normal distributions", J. Amer.
-    /// Statist. Assoc. 62 (1967) 626-633. Conservative where they are correlated.
+    /// Šidák's limit for this many tests at the family's level.
     pub(crate) fn sidak(&self, tests: usize) -> f64 {
         let mut kept = self.sidak.lock().unwrap_or_else(PoisonError::into_inner);
-        *kept.entry(tests).or_insert_with(|| {
-            // 1 - (1 - level)^(1/n), without loss of digits where n is large.
-            let each = -((1.0 - LEVEL).ln() / tests.max(1) as f64).exp_m1();
-            normal_upper(each / 2.0)
-        })
+        *kept.entry(tests).or_insert_with(|| sidak(tests, LEVEL))
     }
+}
+
+/// The two-sided limit of each of `tests` normal statistics that all stay within it but for this share of cases if they
+/// are independent: Z. Šidák, "Rectangular confidence regions for the means of multivariate normal distributions", J.
+/// Amer. Statist. Assoc. 62 (1967) 626-633. Conservative where they are correlated.
+pub(crate) fn sidak(tests: usize, rate: f64) -> f64 {
+    // 1 - (1 - rate)^(1/n), without loss of digits where n is large.
+    let each = -((-rate).ln_1p() / tests.max(1) as f64).exp_m1();
+    normal_upper(each / 2.0)
 }
 
 /// How many standard deviations beyond the limit a bias must lie to show with 80 % probability: the normal quantile.

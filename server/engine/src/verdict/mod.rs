@@ -3,5 +3,5 @@
 mod limits;
 mod statistics;
 
-pub(crate) use limits::Limits;
+pub(crate) use limits::{Limits, sidak};
 pub(crate) use statistics::{Judged, Residual, global_test, judge};

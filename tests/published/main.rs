@@ -11,8 +11,12 @@
 mod check;
 mod covariance;
 mod false_alarms;
+#[path = "../bench/gross_errors/mod.rs"]
+#[allow(dead_code, reason = "the benchmark shows more figures than the tests assert")]
+mod gross_errors;
 mod heat_meter;
 mod indicators;
+mod methods;
 mod networks;
 mod nonlinear;
 mod oracles;

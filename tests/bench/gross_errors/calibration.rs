@@ -12,6 +12,8 @@ use crate::plant::{Draw, Law, Plant};
 const RATE: f64 = 0.05;
 /// The two-sided 95 % point of the normal distribution.
 const INTERVAL: f64 = 1.959_964;
+/// So many quantities whose intervals hold least are shown.
+const WORST: usize = 8;
 /// Bins of stated probabilities.
 const BINS: usize = 5;
 
@@ -39,6 +41,8 @@ struct Outcomes {
     skipped: u32,
     alarms: Share,
     quantities: Share,
+    /// The same of each quantity.
+    each: Vec<Share>,
     indicators: Share,
     /// The same in balances with a finding.
     quantities_found: Share,
@@ -54,12 +58,15 @@ struct Outcomes {
 impl Outcomes {
     fn add(&mut self, plant: &Plant, draw: &Draw, balance: &Balance) {
         self.alarms.add(!balance.findings.is_empty());
-        for (told, truth) in balance.quantities.iter().zip(&draw.truth.quantities) {
+        self.each.resize(balance.quantities.len(), Share::default());
+        for ((told, truth), each) in balance.quantities.iter().zip(&draw.truth.quantities).zip(&mut self.each)
+        {
             if let (Some(value), Some(sigma), Some(truth)) = (told.value, told.sigma, truth.value)
                 && sigma > 0.0
             {
                 let holds = (value - truth).abs() <= INTERVAL * sigma;
                 self.quantities.add(holds);
+                each.add(holds);
                 if !balance.findings.is_empty() {
                     self.quantities_found.add(holds);
                 }
@@ -128,12 +135,12 @@ pub(crate) fn calibration(trials: u32) {
                     outcomes.skipped += 1;
                 }
             }
-            print(name, law, &outcomes);
+            print(name, law, &plant, &outcomes);
         }
     }
 }
 
-fn print(name: &str, law: Law, outcomes: &Outcomes) {
+fn print(name: &str, law: Law, plant: &Plant, outcomes: &Outcomes) {
     let errors = match law {
         Law::None => "no error",
         Law::Own => "errors of the search's own prior",
@@ -142,6 +149,14 @@ fn print(name: &str, law: Law, outcomes: &Outcomes) {
     println!("\n{name}, {errors} ({} draws without a state that closes)", outcomes.skipped);
     println!("  anything found                     {:.4}", outcomes.alarms.value());
     println!("  95 % intervals of quantities hold  {:.4}", outcomes.quantities.value());
+    let labels = plant.compiled.quantities();
+    let known = outcomes.each.iter().zip(labels).filter(|(share, _)| share.cases > 0);
+    let mut each: Vec<(f64, &str)> =
+        known.map(|(share, label)| (share.value(), label.name.as_str())).collect();
+    each.sort_by(|a, b| a.0.total_cmp(&b.0));
+    let worst: Vec<String> =
+        each.iter().take(WORST).map(|(share, name)| format!("{name} {share:.3}")).collect();
+    println!("  ... the least                      {}", worst.join(", "));
     println!("  ... in balances with a finding     {:.4}", outcomes.quantities_found.value());
     println!("  95 % intervals of indicators hold  {:.4}", outcomes.indicators.value());
     let mean = outcomes.flows.map(|sum| sum / f64::from(outcomes.flow_count));

@@ -1,5 +1,6 @@
 //! An example plant whose truth, readings and errors are drawn from the search's own prior.
 
+use std::collections::HashMap;
 use std::fmt::Write;
 use std::path::Path;
 
@@ -8,7 +9,7 @@ use rand_pcg::Pcg64Mcg;
 
 use meterwright_engine::estimate::Anchor;
 use meterwright_engine::plant::parse;
-use meterwright_engine::{Balance, CompiledPlant, FindingKind, Outcome, Prior, Reading};
+use meterwright_engine::{Balance, CompiledPlant, FindingKind, Label, Outcome, Prior, Reading};
 
 /// A plant with its typical state.
 pub(crate) struct Plant {
@@ -62,7 +63,7 @@ impl Plant {
         Self { file, compiled, anchor, base, priors }
     }
 
-    /// A state with errors of a law; nothing where the drawn errors leave no state that closes.
+    /// A state with errors of a law; nothing where the drawn errors leave no state that closes with all flows positive.
     pub(crate) fn draw(&self, law: Law, random: &mut Pcg64Mcg) -> Option<Draw> {
         let errors: Vec<(usize, f64)> = self
             .priors
@@ -119,15 +120,33 @@ impl Plant {
             .zip(self.compiled.tags())
             .map(|(tag, label)| Some(Reading::single(label.unit.from_si(tag.reconciled?))));
         let exact: Vec<Option<Reading>> = exact.collect();
-        let truth = true_plant.balance(&exact, true_plant.anchor(&exact).as_ref());
+        let mut truth = true_plant.balance(&exact, true_plant.anchor(&exact).as_ref());
+        if truth.outcome != Outcome::Converged {
+            return None;
+        }
+        // What is given otherwise is listed in another order.
+        let names: HashMap<&str, usize> =
+            true_plant.quantities().iter().enumerate().map(|(at, label)| (label.name.as_str(), at)).collect();
+        let place = |label: &Label| names.get(label.name.as_str()).map(|at| truth.quantities[*at]);
+        truth.quantities = self.compiled.quantities().iter().map(place).collect::<Option<_>>()?;
+        if truth.quantities.iter().any(|quantity| quantity.at_bound) {
+            return None;
+        }
+        // Uncertainties at the true values: the typical ones may belong to quite another reading.
+        let value = |place: usize, si: f64| Reading::single(self.compiled.tags()[place].unit.from_si(si));
+        let quiet: Vec<Option<Reading>> =
+            truth.tags.iter().enumerate().map(|(at, tag)| Some(value(at, tag.reconciled?))).collect();
+        let quiet_balance = self.compiled.balance(&quiet, Some(&self.anchor));
         let mut readings = Vec::new();
         let mut trusted = Vec::new();
-        for (tag, label) in truth.tags.iter().zip(self.compiled.tags()) {
+        for (at, (tag, quiet)) in truth.tags.iter().zip(&quiet_balance.tags).enumerate() {
+            let label = &self.compiled.tags()[at];
             let noise: f64 = StandardNormal.sample(&mut *random);
             let error = error_of(FindingKind::Bias, &label.name);
-            let value = |si: f64| Some(Reading::single(label.unit.from_si(si)));
-            let reading =
-                tag.reconciled.zip(tag.sigma).and_then(|(truth, sigma)| value(truth + sigma * noise + error));
+            let reading = tag
+                .reconciled
+                .zip(quiet.sigma)
+                .map(|(truth, sigma)| value(at, truth + sigma * noise + error));
             readings.push(reading);
             trusted.push(reading.filter(|_| error == 0.0));
         }
@@ -138,7 +157,8 @@ impl Plant {
             None => self.compiled.balance(&trusted, Some(&self.anchor)),
         };
         let wrong = errors.into_iter().map(|(hypothesis, _)| hypothesis).collect();
-        let closes = truth.outcome == Outcome::Converged && oracle.outcome == Outcome::Converged;
+        let closes =
+            [&truth, &quiet_balance, &oracle].iter().all(|balance| balance.outcome == Outcome::Converged);
         closes.then_some(Draw { wrong, truth, readings, oracle })
     }
 

@@ -9,6 +9,7 @@ mod description;
 mod guard;
 mod logs;
 mod plants;
+mod program;
 mod reconcile;
 mod server;
 mod trends;

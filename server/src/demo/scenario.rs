@@ -69,6 +69,14 @@ pub fn months() -> impl Iterator<Item = Month> {
     BEGINNING.series(1.month()).take_while(|day| *day < END).map(Month)
 }
 
+impl Month {
+    /// The share of history that has passed at its end.
+    pub(super) fn share_passed(self) -> f64 {
+        let days = |until: Date| f64::from((until - BEGINNING).get_days());
+        days(self.0 + 1.month()) / days(END)
+    }
+}
+
 /// A month of hourly means.
 pub fn history_log(month: Month) -> String {
     history(month).csv()
@@ -135,7 +143,8 @@ pub(super) fn history(month: Month) -> Simulated {
 pub(super) fn shift(number: usize) -> Simulated {
     let Some(scene) = Scene::open() else { return Simulated::nothing() };
     let mut instruments = Instruments::of(&scene.plant);
-    let mut random = Pcg64Mcg::new(1000 + number as u128);
+    // The generator takes odd seeds only: two that differ in their lowest bit are one.
+    let mut random = Pcg64Mcg::new(1001 + 2 * number as u128);
     let mut log = Simulated::of(&instruments);
     let (_, hour) = SHIFTS[number];
     let begin = scene.instant(date(2026, 11, 2).at(hour, 0, 0, 0));

@@ -1,6 +1,6 @@
 use meterwright_engine::{Balance, Reading, plant};
 
-use super::scenario::{BIAS, BIASED, DRIFTING, FOULED, LEAK, history, shift};
+use super::scenario::{BIAS, BIASED, DRIFTING, FOULED, LEAK, WEAR, history, shift};
 use super::snapshot::Snapshot;
 use super::unit::{Condition, Operation, Unit};
 use super::*;
@@ -49,11 +49,25 @@ fn readings_without_error_balance_with_nothing_to_adjust() {
     }
 }
 
-/// Mass and energy close round every machine that has more than one way in and out.
+/// Mass and energy close round every machine, and mass round the boiler and the turbine, with and without a leak.
 #[test]
 fn every_machine_closes() {
-    let state = Unit::new().unwrap().predict(&operation(137e6), &FRESH).unwrap();
+    for (load, leak) in [(137e6, 0.0), (150e6, LEAK / 3.6), (95e6, LEAK / 3.6)] {
+        let operation = Operation { boiler_leak: leak, ..operation(load) };
+        closes(&Unit::new().unwrap().predict(&operation, &FRESH).unwrap(), leak);
+    }
+}
+
+fn closes(state: &Snapshot, leak: f64) {
     let flow = |name: &str| state.stream(name).unwrap();
+    let mass = |names: &[&str]| names.iter().map(|name| flow(name).mass_flow).sum::<f64>();
+    let boiler = mass(&["feedwater", "main_spray"]) / (mass(&["main_steam", "blowdown"]) + leak);
+    let reheater = mass(&["cold_reheat", "reheat_spray"]) / mass(&["hot_reheat"]);
+    let sections = ["extraction_5", "extraction_4", "extraction_3", "extraction_2", "exhaust"];
+    let turbine = mass(&["hot_reheat"]) / mass(&sections);
+    for (part, share) in [("boiler", boiler), ("reheater", reheater), ("turbine", turbine)] {
+        assert!((share - 1.0).abs() < 1e-9, "{part}: {share}");
+    }
     let machines: [(&str, &[&str], &[&str], f64); 10] = [
         ("cold reheat", &["hp_exhaust"], &["cold_reheat", "extraction_6", "auxiliary_supply"], 0.0),
         ("heater 6", &["heater_6_steam", "feedwater_5"], &["drain_6", "feedwater"], 0.0),
@@ -203,7 +217,15 @@ fn the_same_logs_are_made_every_time() {
     let lines: Vec<&str> = log.lines().collect();
     assert_eq!((lines.len(), lines[0].split(',').count()), (1 + 28 * 24, 1 + 66));
     assert!(lines[1].starts_with("2026-01-31T23:00:00Z,"), "midnight in the plant's zone: {}", lines[1]);
-    let names: Vec<String> = shift_logs().into_iter().map(|log| log.name).collect();
+    let shifts = shift_logs();
+    assert!(shifts.iter().all(|log| log.csv.lines().count() == 1 + 480), "no minute is left out");
+    // As many hours in all as there are in 273 days, from one winter time to the next.
+    let hours: usize = months().map(|month| history(month).rows.len()).sum();
+    assert_eq!(hours, 273 * 24);
+    let names: Vec<String> = shifts.into_iter().map(|log| log.name).collect();
     assert_eq!(names, ["2026-11-02-morning.csv", "2026-11-02-afternoon.csv", "2026-11-02-night.csv"]);
-    assert!(truth().to_json().contains(BIASED));
+    let truth = truth();
+    assert!(truth.to_json().contains(BIASED));
+    assert!((truth.months[0].high_pressure_points - 100.0 * WEAR * 28.0 / 273.0).abs() < 1e-12);
+    assert!((truth.months[8].high_pressure_points - 100.0 * WEAR).abs() < 1e-12);
 }

@@ -2,7 +2,7 @@
 
 use serde::Serialize;
 
-use super::scenario::{BIAS, BIASED, DRIFT, DRIFTING, FOULED, FOULING, LEAK, SHIFTS, WEAR, months};
+use super::scenario::{BIAS, BIASED, DRIFT, DRIFTING, FOULED, FOULING, LEAK, Month, SHIFTS, WEAR, months};
 
 /// Everything that is wrong in the invented logs, and how the unit wears.
 #[derive(Clone, Debug, Serialize)]
@@ -44,15 +44,13 @@ pub fn truth() -> Truth {
     let shifts = |range: std::ops::Range<usize>| -> Vec<String> {
         SHIFTS[range].iter().map(|(name, _)| format!("2026-11-02-{name}")).collect()
     };
-    let all: Vec<String> = months().map(|month| month.to_string()).collect();
-    let count = all.len() as f64;
-    let wear = |(number, month): (usize, &String)| Wear {
-        month: month.clone(),
-        high_pressure_points: 100.0 * WEAR * (number + 1) as f64 / count,
-        fouling_percent: 100.0 * FOULING * (number + 1) as f64 / count,
+    let wear = |month: Month| Wear {
+        month: month.to_string(),
+        high_pressure_points: 100.0 * WEAR * month.share_passed(),
+        fouling_percent: 100.0 * FOULING * month.share_passed(),
     };
     Truth {
-        months: all.iter().enumerate().map(wear).collect(),
+        months: months().map(wear).collect(),
         errors: vec![
             Wrong { at: BIASED, what: "reads too low", size: BIAS, unit: "t/h", logs: shifts(0..3) },
             Wrong {
@@ -68,7 +66,7 @@ pub fn truth() -> Truth {
                 what: "its element fouls evenly over all months; it is cleaned on the first of November",
                 size: 100.0 * FOULING,
                 unit: "% of the reading",
-                logs: all,
+                logs: months().map(|month| month.to_string()).collect(),
             },
         ],
     }

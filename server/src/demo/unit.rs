@@ -65,7 +65,7 @@ pub(super) const DESIGN_STEAM: f64 = 429.0 * TONNE;
 /// Passes after which flows and pressures must have come to rest.
 const MOST_PASSES: usize = 400;
 /// They have where none changes by more than this share.
-const AT_REST: f64 = 1e-14;
+const AT_REST: f64 = 1e-12;
 
 /// Flows and pressures that one pass takes and the next improves.
 #[derive(Clone, Copy, Debug)]
@@ -78,6 +78,17 @@ pub(super) struct Guess {
     pub(super) condensate: f64,
     /// Pressures from the reheater to the condenser, Pa.
     pub(super) pressures: [f64; 6],
+}
+
+/// Why there is no state.
+#[derive(Debug, thiserror::Error)]
+pub(super) enum PredictError {
+    /// Water and steam have none like it.
+    #[error(transparent)]
+    Water(#[from] WaterError),
+    /// Flows and pressures go on changing.
+    #[error("flows and pressures come to no rest")]
+    Restless,
 }
 
 /// The unit, ready to predict.
@@ -106,12 +117,12 @@ impl Unit {
     /// The state that follows from what the unit is to do.
     ///
     /// # Errors
-    /// It leads to a state that water and steam don't have.
+    /// It leads to a state that water and steam don't have, or comes to no rest.
     pub(super) fn predict(
         &self,
         operation: &Operation,
         condition: &Condition,
-    ) -> Result<Snapshot, WaterError> {
+    ) -> Result<Snapshot, PredictError> {
         let share = operation.load / 150e6;
         let mut guess = Guess {
             steam: DESIGN_STEAM * share,
@@ -120,7 +131,7 @@ impl Unit {
             pressures: DESIGN_PRESSURES.map(|pressure| pressure * share),
         };
         guess.pressures[5] = saturation::pressure(operation.cooling_water + 12.0)?.0;
-        for _ in 1..MOST_PASSES {
+        for _ in 0..MOST_PASSES {
             let (next, snapshot) = self.pass(&guess, operation, condition)?;
             let change = changed(&guess, &next);
             guess = next;
@@ -128,7 +139,7 @@ impl Unit {
                 return Ok(snapshot);
             }
         }
-        self.pass(&guess, operation, condition).map(|(_, snapshot)| snapshot)
+        Err(PredictError::Restless)
     }
 
     /// One pass through all machines, in the order of the water and then of the steam.

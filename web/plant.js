@@ -22,9 +22,9 @@ export function start() {
   creation.set("", "new");
   fill(byId("plant-create"), el("h2", {}, "New plant"),
     el("p", { class: "hint" }, "Choose or drop a plant file (.toml), or write it here."),
-    filePicker(creation), creation.node, creationSaid,
+    filePicker(creation, "plant-input"), creation.node, creationSaid,
     button("Create plant", create, { id: "create-plant", class: "main" }));
-  fill(byId("plant-revise"), reviseTitle, revisionList, filePicker(revision), revision.node,
+  fill(byId("plant-revise"), reviseTitle, revisionList, filePicker(revision, "revision-input"), revision.node,
     el("label", { class: "field" }, "Valid from ", validFrom),
     el("span", { class: "hint" }, " on the plant's clock; left empty: from now on"),
     revisionSaid,
@@ -49,9 +49,9 @@ export async function takePlantFile(file) {
   byId(isRevising ? "revision-text" : "plant-text").focus();
 }
 
-function filePicker(form) {
+function filePicker(form, id) {
   const input = el("input", {
-    type: "file", accept: ".toml,text/plain",
+    type: "file", id, accept: ".toml,text/plain",
     onchange: async () => {
       if (input.files[0]) form.type(await input.files[0].text());
       input.value = "";

@@ -11,6 +11,7 @@ use crate::compile::Instrument;
 use crate::estimate::{self, Anchor, Solution};
 use crate::kkt::FactorError;
 use crate::search::{Candidate, Chance, Named, Posterior, Set, Source, bound, name};
+use crate::verdict;
 
 /// What the search of a plant keeps from one balance to the next, for each anchor and set of live tags.
 #[derive(Default)]
@@ -111,7 +112,10 @@ impl CompiledPlant {
         for tag in
             balance.tags.iter_mut().chain(&mut balance.givens).filter(|tag| tag.verdict == Verdict::Suspect)
         {
-            tag.verdict = Verdict::Trusted;
+            // Its own test is set aside; how well it is checked is not.
+            let (detectable, sigma) = (tag.minimum_detectable_bias, tag.sigma);
+            let sigmas = detectable.zip(sigma).map_or(f64::INFINITY, |(bias, sigma)| bias / sigma);
+            tag.verdict = verdict::unsuspected(sigmas);
         }
         Ok(balance)
     }

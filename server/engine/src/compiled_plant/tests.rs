@@ -3,7 +3,7 @@
 use nalgebra::DMatrix;
 
 use super::CompiledPlant;
-use crate::balance::Reading;
+use crate::balance::{Reading, Verdict};
 use crate::estimate::{self, Anchor, probe};
 use crate::kkt::{Analysis, Column, Diagonal, Factor, Pattern};
 use crate::plant::parse;
@@ -300,4 +300,26 @@ fn an_excluded_tag_has_a_balanced_value_only_where_its_quantity_is_known() {
         }
     }
     assert!(unknown > 5, "{unknown} excluded tags were of something unknown");
+}
+
+/// A wrong meter pulls badly checked ones beyond their limit too. Once it is found they are what they were: unchecked.
+#[test]
+fn a_tag_agrees_only_where_a_bias_of_ten_sigmas_would_show() {
+    let (compiled, mut readings, anchor) = case(UNIT);
+    readings[0].as_mut().unwrap().mean += 28.0;
+    let before = compiled.balance(&readings, Some(&anchor));
+    let balance = compiled.balance_and_search(&readings, Some(&anchor), 0.05);
+    let mut mended = 0;
+    for ((label, tag), plain) in compiled.tags().iter().zip(&balance.tags).zip(&before.tags) {
+        let Some((bias, sigma)) = tag.minimum_detectable_bias.zip(tag.sigma) else { continue };
+        let is_checked = bias <= 10.0 * sigma;
+        assert!(
+            tag.verdict != Verdict::Trusted || is_checked,
+            "{} would show from {} sigmas",
+            label.name,
+            bias / sigma
+        );
+        mended += usize::from(!is_checked && plain.verdict == Verdict::Suspect);
+    }
+    assert!(mended > 0, "the wrong meter pulls a badly checked one beyond its limit");
 }

@@ -4,4 +4,4 @@ mod limits;
 mod statistics;
 
 pub(crate) use limits::{Limits, sidak};
-pub(crate) use statistics::{Judged, Residual, global_test, judge};
+pub(crate) use statistics::{Judged, Residual, global_test, judge, unsuspected};

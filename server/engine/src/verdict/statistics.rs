@@ -41,6 +41,11 @@ impl Residual {
     }
 }
 
+/// What is said of a reading that nothing suspects, whose minimum detectable bias is so many sigmas.
+pub(crate) fn unsuspected(detectable: f64) -> Verdict {
+    if detectable > UNCHECKED { Verdict::Unchecked } else { Verdict::Trusted }
+}
+
 /// Judges all readings of a balance together: the limit depends on how many are tested.
 pub(crate) fn judge(residuals: &[Residual], limits: &Limits) -> Vec<Judged> {
     let redundancies: Vec<f64> = residuals.iter().map(Residual::redundancy).collect();
@@ -61,10 +66,8 @@ pub(crate) fn judge(residuals: &[Residual], limits: &Limits) -> Vec<Judged> {
         let statistic = residual.deviation.abs() / (residual.sigma * root);
         let verdict = if redundancy >= TESTED && statistic > limit {
             Verdict::Suspect
-        } else if detectable / root > UNCHECKED {
-            Verdict::Unchecked
         } else {
-            Verdict::Trusted
+            unsuspected(detectable / root)
         };
         Judged {
             redundancy,
